@@ -1,0 +1,7 @@
+"""`python -m designer` is `leapwright`."""
+
+import sys
+
+from designer.cli import main
+
+sys.exit(main())

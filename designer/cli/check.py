@@ -1,0 +1,38 @@
+"""`leapwright check`: constants at every rate, and the rule read back."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+
+@click.command("check")
+@click.argument("source", metavar="BRIEF|RESULT", type=click.Path(path_type=Path))
+@click.option(
+    "--set", "settings", metavar="NAME=VALUE", multiple=True, help="Change one constant; repeat at will."
+)
+@click.option(
+    "--pick", metavar="SET", help="Which set: today, a label such as B, a mark, or a name of [[sets]]."
+)
+@click.option("--json", "as_json", is_flag=True, help="Print one JSON document and nothing else.")
+def command(source: Path, settings: tuple[str, ...], pick: str | None, as_json: bool) -> int:
+    """Show constants at every rate of a brief, which ledges and gaps hold, and the update rule read back.
+
+    Exit status 1 where a ledge or gap fails or the jump never lands.
+    """
+    from designer.cli.source import open_source, pick_set
+    from designer.objective.judge import judge
+
+    brief, document = open_source(source)
+    name, constants = pick_set(source, brief, document, pick, settings)
+    verdict = judge(brief, constants)
+    if as_json:
+        from designer.report.document import to_json, verdict_document
+
+        click.echo(to_json(verdict_document(verdict)), nl=False)
+    else:
+        from designer.report.tables import print_check
+
+        print_check(brief, name, verdict)
+    return 0 if verdict.feasible else 1

@@ -1,0 +1,78 @@
+"""From raw jumps to what designers talk about (DESIGN: measures); one definition for every command."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from designer.motion.jumps import Jumps, Launches, Status
+from designer.motion.rule import LandingTest, Rule
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+MEASURES = {
+    "apex": "length",
+    "apex_time": "time",
+    "airtime": "time",
+    "landing_speed": "speed",
+    "max_gap": "length",
+    "sure_gap": "length",
+    "step_top": "length",
+    "steps": "count",
+    "effective_gravity": "acceleration",
+    "time_near_apex": "time",
+    "flip_margin": "acceleration",
+}
+"""Every measure by name, with the kind of unit that it has. Each may be a target."""
+
+OF_FLIGHT = ("apex", "apex_time", "airtime", "landing_speed", "steps", "effective_gravity", "time_near_apex")
+"""Measures that follow from the flight alone; the others also need run_speed, step_up or edge_allowance,
+or (flip_margin) belong to the constants."""
+
+UNITS = {"length": "{u}", "time": "s", "speed": "{u}/s", "acceleration": "{u}/s²", "count": ""}
+
+
+def unit_of(measure: str, length_unit: str) -> str:
+    """Return the unit of a measure for tables and axes: "cm/s²"; empty for counts."""
+    return UNITS[MEASURES[measure]].format(u=length_unit)
+
+
+def of_flight(name: str, rule: Rule, launches: Launches, jumps: Jumps) -> NDArray[np.float64]:
+    """Return one of OF_FLIGHT for each jump, in the launches' shape; NaN where the jump does not land.
+
+    Units are the brief's length and seconds. time_near_apex needs jumps flown with near_apex_steps counted.
+    """
+    h = np.asarray(launches.step, dtype=np.float64)
+    n = jumps.steps.astype(np.float64)
+    match name:
+        case "apex":
+            values = jumps.apex
+        case "apex_time":
+            values = jumps.apex_step * h
+        case "airtime":
+            swept = rule.landing_test is LandingTest.SWEPT
+            values = (n - 1.0) * h + h * jumps.fraction if swept else n * h
+        case "landing_speed":
+            values = 0.0 - jumps.landing_velocity
+        case "steps":
+            values = n
+        case "effective_gravity":
+            with np.errstate(divide="ignore", invalid="ignore"):
+                values = (launches.launch_speed - jumps.landing_velocity) / (n * h)
+        case "time_near_apex":
+            values = jumps.near_apex_steps * h
+        case _:
+            raise ValueError(f"{name!r} does not follow from the flight alone; known: {', '.join(OF_FLIGHT)}")
+    return np.where(jumps.status == Status.LANDS, values, np.nan)
+
+
+def max_gap(airtime: NDArray[np.float64], run_speed: object, edge_allowance: object) -> NDArray[np.float64]:
+    """Return run_speed·airtime + edge_allowance, length."""
+    return np.asarray(run_speed * airtime + edge_allowance, dtype=np.float64)  # type: ignore[operator]
+
+
+def sure_gap(reach: NDArray[np.float64], run_speed: object, step: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return max(0, max_gap − run_speed·h): the gap in the worst phase of the take-off step, length."""
+    return np.maximum(0.0, reach - run_speed * step)  # type: ignore[operator]

@@ -1,0 +1,123 @@
+"""The picture of jump arcs over the brief's ledges and gaps, to scale; plain data in, nothing computed."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from designer.analysis.arcs import Arc, GapShape, LedgeShape, Scene
+from designer.report import labels, style
+from designer.report.figures import head
+from designer.report.style import Look
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+WORDS = {"reach": "reach", "cross": "cross", "stay-out": "stay out"}
+
+
+@dataclass(frozen=True, slots=True)
+class ArcPicture:
+    """One set's arcs over the scene, with today's underneath."""
+
+    title: str
+    subtitle: str
+    unit: str
+    scene: Scene
+    look: Look
+    under: tuple[Arc, ...]
+    """Arcs of today, drawn in grey first; empty where there is no today or it is the set itself."""
+    x_range: tuple[float, float]
+    y_range: tuple[float, float]
+    thickness: float
+    """How thick slabs and ground are drawn, length."""
+    title_width: int = style.TITLE_WIDTH
+
+
+def arcs(ax: Axes, picture: ArcPicture) -> Axes:
+    """Draw one line a rate over the ledges and gaps, x and y to one scale where x is a distance."""
+    scene = picture.scene
+    ax.set_xlim(*picture.x_range)
+    ax.set_ylim(*picture.y_range)
+    if scene.by_distance:
+        ax.set_aspect("equal", adjustable="box")
+    ax.grid(color=style.FAINT, linewidth=0.6)
+    _ground(ax, picture)
+    for ledge in scene.ledges:
+        _slab(ax, ledge, picture.thickness)
+    for gap in scene.gaps:
+        _far_side(ax, gap, picture)
+    for arc in picture.under:
+        ax.plot(arc.x, arc.y, color=style.TODAY, linewidth=1.3, alpha=0.85, zorder=2.0)
+    for arc in scene.arcs:
+        strong = arc.nominal
+        ax.plot(
+            arc.x,
+            arc.y,
+            color=picture.look.colour,
+            linewidth=2.0 if strong else 0.8,
+            alpha=1.0 if strong else 0.75,
+            zorder=2.6 if strong else 2.4,
+        )
+    ax.set_xlabel(f"distance run ({picture.unit})" if scene.by_distance else "time since launch (s)")
+    ax.set_ylabel(f"height ({picture.unit})")
+    head(ax, picture.title, picture.subtitle, picture.title_width)
+    _names(ax, picture)
+    return ax
+
+
+def _ground(ax: Axes, picture: ArcPicture) -> None:
+    """Draw the ground of the take-off, up to the edge where there are gaps."""
+    end = 0.0 if picture.scene.gaps else picture.x_range[1]
+    start = picture.x_range[0]
+    ax.add_patch(_box(start, -picture.thickness, end - start, picture.thickness, "reach"))
+
+
+def _box(x: float, y: float, width: float, height: float, must: str):  # type: ignore[no-untyped-def]
+    """Return a filled box for what must be made, an open dashed one for what must not."""
+    from matplotlib.patches import Rectangle
+
+    keep_out = must == "stay-out"
+    return Rectangle(
+        (x, y),
+        width,
+        height,
+        facecolor=style.PAPER if keep_out else style.SOLID,
+        edgecolor=style.SOLID,
+        linestyle=style.LEDGE_DASH[must] if keep_out else "solid",
+        linewidth=1.2 if keep_out else 0.8,
+        zorder=1.8,
+    )
+
+
+def _slab(ax: Axes, ledge: LedgeShape, thickness: float) -> None:
+    """Draw a ledge: a slab whose top is at its height."""
+    ax.add_patch(
+        _box(ledge.x_from, ledge.height - thickness, ledge.x_to - ledge.x_from, thickness, ledge.must)
+    )
+
+
+def _far_side(ax: Axes, gap: GapShape, picture: ArcPicture) -> None:
+    """Draw the far side of a gap, and dotted what edge_allowance adds to it."""
+    end = picture.x_range[1]
+    ax.add_patch(
+        _box(gap.width, gap.far_level - picture.thickness, end - gap.width, picture.thickness, gap.must)
+    )
+    if picture.scene.edge_allowance > 0.0:
+        ax.plot(
+            [gap.width - picture.scene.edge_allowance, gap.width],
+            [gap.far_level, gap.far_level],
+            color=style.SOLID,
+            linewidth=1.5,
+            linestyle=(0, (1, 1)),
+            zorder=1.9,
+        )
+
+
+def _names(ax: Axes, picture: ArcPicture) -> None:
+    """Name ledges and gaps in a column at the right, at their heights."""
+    scene = picture.scene
+    heights = [ledge.height for ledge in scene.ledges] + [gap.far_level for gap in scene.gaps]
+    texts = [f"{style.shorten(x.name)}\n{x.height:g}, {WORDS[x.must]}" for x in scene.ledges]
+    texts += [f"{style.shorten(x.name)}\n{x.width:g} wide, {WORDS[x.must]}" for x in scene.gaps]
+    labels.column(ax, heights, texts, [style.INK] * len(texts), [False] * len(texts))

@@ -1,0 +1,1 @@
+"""From a brief to a few proposed sets of constants."""

@@ -1,0 +1,216 @@
+"""The exhaustive scan: every design of the grid at every rate, and so a certificate.
+
+What flies does not know how fast one runs nor at which step aims are judged. So each distinct (gravity,
+launch_speed, grain, fall_factor, terminal_speed) is flown once at every step in question, block by block, and
+the designs are put together from that.
+"""
+
+from __future__ import annotations
+
+from collections import deque
+from collections.abc import Callable, Iterator
+from concurrent.futures import Future, ThreadPoolExecutor
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, TypeVar
+
+import numpy as np
+
+from designer.brief.model import Brief, Loop
+from designer.motion.closed_form import has_closed_form
+from designer.motion.jumps import LONGEST_FLIGHT
+from designer.motion.rule import SEARCHABLE
+from designer.motion.simulate import PLAIN_STEPS
+from designer.objective.score import Scores, score
+from designer.objective.table import Designs, JumpTable, extremes, kinematics, scalars
+from designer.search.progress import Progress, Silent
+from designer.search.ranking import NO_ROWS, Leaders, Rows, absorb, cells, contenders, join, rows_of
+from designer.search.result import Certificate, RunnerUp
+from designer.search.space import Space, values
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    Ints = NDArray[np.int64]
+    Floats = NDArray[np.float64]
+
+T = TypeVar("T")
+
+MOTION = ("gravity", "launch_speed", "grain", "fall_factor", "terminal_speed")
+"""What decides a flight at a given step."""
+BLOCK_JUMPS = 200_000
+"""Jumps flown at a time: small enough for the caches, large enough for NumPy."""
+DOUBTFUL = 0.04
+"""The share of jumps on a tidy grid that the closed form hands back to be stepped (ties and the like)."""
+
+
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """A grid laid out for scanning."""
+
+    space: Space
+    steps: Floats
+    """Every distinct step in question, seconds, (columns,)."""
+    supported: tuple[int, ...]
+    """The columns of the supported rates."""
+    nominals: tuple[int, ...]
+    """The column at which aims are judged, for each point of the step axis."""
+
+    @property
+    def motion_shape(self) -> tuple[int, ...]:
+        """How many points each axis of MOTION has."""
+        return tuple(len(self.space.axis(name).points or ()) for name in MOTION)
+
+    @property
+    def flights(self) -> int:
+        """How many constants must be flown, each at every step."""
+        return int(np.prod(self.motion_shape, dtype=np.int64))
+
+    def block_starts(self) -> range:
+        """Return where each block of flights starts."""
+        return range(0, self.flights, max(1, BLOCK_JUMPS // len(self.steps)))
+
+
+def plan(brief: Brief, space: Space) -> Plan:
+    """Lay out a grid for scanning."""
+    supported = [rate.step for rate in brief.rates.supported]
+    nominal = [brief.aim_at.step] if brief.aim_at is not None else list(space.axis("step").points or ())
+    steps = sorted({*supported, *nominal})
+    return Plan(
+        space,
+        np.array(steps),
+        tuple(steps.index(h) for h in supported),
+        tuple(steps.index(h) for h in nominal),
+    )
+
+
+def steps_to_simulate(brief: Brief, layout: Plan) -> float:
+    """Estimate from the unrounded jump how many steps a scan must simulate, closed forms set aside."""
+    gravity, launch, grain, fall = (values(layout.space.axis(name)) for name in MOTION[:4])
+    with np.errstate(divide="ignore"):
+        flight = np.mean(1.0 / gravity) * np.mean(launch) * np.mean(1.0 + 1.0 / np.sqrt(fall))
+    steps = float(np.sum(min(float(flight), LONGEST_FLIGHT) / layout.steps))
+    share = float(np.mean(np.where(has_closed_form(brief.rule, grain), DOUBTFUL, 1.0)))
+    levels = 1 + len({gap.far_level for gap in brief.gaps} - {0.0})
+    return share * levels * layout.flights * steps
+
+
+@dataclass(frozen=True, slots=True)
+class Batch:
+    """Designs that share step and run speed, tabled and scored."""
+
+    index: Ints
+    designs: Designs
+    tables: tuple[JumpTable, ...]
+    scores: Scores
+
+
+def batches(brief: Brief, layout: Plan, start: int, compiled: bool | None = None) -> Iterator[Batch]:
+    """Fly one block and yield its designs, a batch for each nominal step and run speed."""
+    space = layout.space
+    stop = min(start + layout.block_starts().step, layout.flights)
+    at = dict(zip(MOTION, np.unravel_index(np.arange(start, stop), layout.motion_shape), strict=True))
+    count = stop - start
+    still = np.zeros(count, dtype=np.intp)
+    chosen = {name: values(space.axis(name))[at.get(name, still)] for name in SEARCHABLE}
+    flown = Designs(**chosen)
+    kin = kinematics(brief, flown.launches(layout.steps), compiled=compiled)
+    steps, runs = values(space.axis("step")), values(space.axis("run_speed"))
+    for i, nominal in enumerate(layout.nominals):
+        for j, run in enumerate(runs):
+            designs = replace(flown, step=np.full(count, steps[i]), run_speed=np.full(count, run))
+            place = at | {"step": still + i, "run_speed": still + j}
+            index = np.ravel_multi_index([place[name] for name in SEARCHABLE], space.shape)
+            tables = extremes(brief, kin, nominal, layout.supported, scalars(brief, designs))
+            yield Batch(index.astype(np.int64), designs, tables, score(brief, tables))
+
+
+def only_numbers(brief: Brief, designs: Designs) -> NDArray[np.bool_]:
+    """Return which designs keep today's step and grain, so that only numbers change."""
+    today = brief.today
+    if today is None:
+        return np.zeros(len(designs.grain), dtype=bool)
+    same = designs.grain == today.grain
+    return same if brief.loop is Loop.EACH_FRAME else same & (designs.step == today.step)
+
+
+def as_rows(brief: Brief, index: Ints, designs: Designs, scores: Scores) -> Rows:
+    """Return scored designs as rows for the ranking."""
+    alike = cells(
+        designs.gravity, designs.launch_speed, designs.run_speed, designs.fall_factor, designs.terminal_speed
+    )
+    return rows_of(scores, index, only_numbers(brief, designs), alike)
+
+
+def in_order(
+    work: Callable[[int], T], starts: range, workers: int, progress: Progress, stage: str
+) -> Iterator[T]:
+    """Yield work(start) for each block, in order, with a few blocks under way in each worker thread."""
+    if workers <= 1 or len(starts) == 1:
+        for done, start in enumerate(starts):
+            yield work(start)
+            progress.update(stage, done + 1, len(starts))
+        return
+    pool = ThreadPoolExecutor(workers)
+    try:
+        waiting: deque[Future[T]] = deque()
+        done = 0
+        for start in starts:
+            waiting.append(pool.submit(work, start))
+            if len(waiting) > 2 * workers:
+                yield waiting.popleft().result()
+                done += 1
+                progress.update(stage, done, len(starts))
+        while waiting:
+            yield waiting.popleft().result()
+            done += 1
+            progress.update(stage, done, len(starts))
+    finally:
+        pool.shutdown(wait=True, cancel_futures=True)
+
+
+@dataclass(frozen=True, slots=True)
+class Scan:
+    """What a scan found."""
+
+    leaders: Leaders
+    evaluated: int
+    certificate: Certificate
+
+
+def scan(brief: Brief, space: Space, *, workers: int = 1, progress: Progress | None = None) -> Scan:
+    """Score every design of a grid; neither the number of workers nor their pace changes the result."""
+    layout = plan(brief, space)
+    leaders = Leaders()
+    # Block by block the work looks small; what counts is the whole.
+    compiled = True if steps_to_simulate(brief, layout) > PLAIN_STEPS else None
+
+    def work(start: int) -> tuple[int, Rows]:
+        so_far, kept, count = leaders, [NO_ROWS], 0
+        for batch in batches(brief, layout, start, compiled):
+            rows = as_rows(brief, batch.index, batch.designs, batch.scores)
+            kept.append(contenders(so_far, rows))
+            count += len(rows)
+        return count, join(kept)
+
+    evaluated = 0
+    for count, rows in in_order(work, layout.block_starts(), workers, progress or Silent(), "scan"):
+        leaders = absorb(leaders, rows)
+        evaluated += count
+    return Scan(leaders, evaluated, _certificate(brief, space, leaders, evaluated))
+
+
+def _certificate(brief: Brief, space: Space, leaders: Leaders, evaluated: int) -> Certificate:
+    second = leaders.ranked.take(np.array([1] if len(leaders.ranked) > 1 else [], dtype=np.int64))
+    runner_up = None
+    if len(second):
+        constants = space.designs(second.index).constants(0, brief)
+        runner_up = RunnerUp(constants, float(second.cost[0]), float(second.violation[0]))
+    return Certificate(
+        kind="grid",
+        method="enumerated",
+        grid_points=space.size,
+        evaluated=evaluated,
+        complete=evaluated == space.size,
+        grid_hash=space.grid_hash(brief.rule),
+        runner_up=runner_up,
+    )
