@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from designer.brief.model import Brief, Rate
+from designer.motion.jumps import Status
 from designer.motion.rule import Constants
 from designer.motion.simulate import trace
 
@@ -105,7 +106,7 @@ def _arc(brief: Brief, constants: Constants, rate: tuple[Rate, bool], pace: floa
     """Trace one rate and cut the last segment where it meets the lowest level."""
     which, nominal = rate
     flight = trace(brief.rule, constants, which.step)
-    lands = bool(flight.lands)
+    lands = flight.status is Status.LANDS
     if lands and lowest < 0.0:
         flight = trace(brief.rule, constants, which.step, lowest)
     t, y = np.asarray(flight.t, dtype=np.float64), np.asarray(flight.y, dtype=np.float64)

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from designer.brief.choices import Path, Reader
-from designer.brief.keys import KNOWN, LATER, LISTS, NOT_YET, TABLES, unknown_key
+from designer.brief.keys import KNOWN, LISTS, TABLES, unknown_key
 from designer.brief.model import Brief, Choice, Gap, JumpBrief, Ledge, Loop, NamedSet, Rates, Target
 from designer.brief.rates import merge_rates
 from designer.brief.schema import Context, _text, check_table, read_units, wrong_shape
@@ -71,7 +71,7 @@ class Builder:
 
     def _read_tables(self, units: Units) -> None:
         for section in ("loop", "rule"):
-            if section not in self.raw:
+            if section not in self.raw and "with" not in self.raw:
                 self.wrong.append(((section,), _MISSING[section]))
         context = Context(Reader(units, self._frame_time()))
         for section in (*TABLES, *LISTS):
@@ -90,7 +90,7 @@ class Builder:
             self.wrong += wrong
             return
         if not isinstance(raw, list) or not raw:
-            self.wrong.append(((section,), wrong_shape(section)))
+            self.wrong.append(((section,), wrong_shape(section, raw)))
             return
         models = []
         for index, item in enumerate(raw):
@@ -142,19 +142,21 @@ class Builder:
 
     def _constants(self) -> None:
         """Check that every constant without a default is said where it is wanted."""
-        if "today" not in self.raw and "search" not in self.raw:
+        if "with" in self.raw or "jumps" in self.raw:
+            return  # these may say what is missing here, and are refused as not yet known
+        said = [section for section in ("today", "search") if section in self.raw]
+        if not said:
             words = "[today] with the constants of the build, or [search] with what may change, or both"
             fix = "add [today] with gravity = … and launch_speed = …"
-            if not any(key in self.raw for key in LATER[""]):
-                self.wrong.append(((), Misread(words, fix=fix)))
+            self.wrong.append(((), Misread(words, fix=fix)))
             return
-        today, search = self._raw("today"), self._raw("search")
+        if any(not isinstance(self.raw[section], dict) for section in said):
+            return
         for name in self._needed():
-            if name not in today and name not in search:
-                section = "today" if "today" in self.raw else "search"
+            if not any(name in self.raw[section] for section in said):
                 words = f"{name} in [today] or [search]; it has no default"
-                self.wrong.append(((section, name), Misread(words, fix=f"add {name} = {_EXAMPLES[name]}")))
-        if "search" in self.raw and "targets" not in self.raw:
+                self.wrong.append(((said[0], name), Misread(words, fix=f"add {name} = {_EXAMPLES[name]}")))
+        if "search" in said and "targets" not in self.raw:
             words = "[targets]: a search needs to know what is wanted"
             fix = "add [targets] with, for example, apex = { aim = 120, within = 2 }"
             self.wrong.append((("targets",), Misread(words, fix=fix)))
@@ -190,25 +192,29 @@ class Builder:
     def _twice(self) -> None:
         """Check that no name stands twice, and that no set takes a name which commands use."""
         for section in LISTS:
-            seen: dict[str, int] = {}
-            for index, table in self.tables.get(section, ()):
-                first = seen.setdefault(table.name.casefold(), index)
-                path = (section, index, "name")
-                if first != index:
-                    words = f"a name of its own for each of [[{section}]]; number {first + 1} has it already"
-                    self.wrong.append((path, Misread(words, fix="give one of them another name")))
-                if section == "sets" and (
-                    table.name == "today" or (len(table.name) == 1 and table.name.isupper())
-                ):
-                    words = '"today" and single capital letters are how commands name other sets'
-                    self.wrong.append(
-                        (path, Misread(words, fix=f'name it differently, as in "set {table.name}"'))
-                    )
+            raw = self.raw.get(section)
+            tables = raw if isinstance(raw, list) else []
+            names = [table.get("name") if isinstance(table, dict) else None for table in tables]
+            self._names_twice(section, [name if isinstance(name, str) else "" for name in names])
+        if any(section in self.raw and self.tables.get(section) is None for section in ("today", "search")):
+            return  # what a set may fall back on is not known
         for index, table in self.tables.get("sets", ()):
             for name in self._needed():
                 if getattr(table, name) is None and self._base_value(name) is None:
                     words = f"{name}, which neither [today] nor a fixed value of [search] gives"
                     self.wrong.append((("sets", index, name), Misread(words, fix=f"add {name} = …")))
+
+    def _names_twice(self, section: str, names: list[str]) -> None:
+        seen: dict[str, int] = {}
+        for index, name in enumerate(names):
+            path = (section, index, "name")
+            first = seen.setdefault(name.strip().casefold(), index)
+            if name and first != index:
+                words = f"a name of its own for each of [[{section}]]; number {first + 1} has it already"
+                self.wrong.append((path, Misread(words, fix="give one of them another name")))
+            if section == "sets" and name == "today":
+                words = 'a name other than "today", which is the set of [today]'
+                self.wrong.append((path, Misread(words, fix='name it differently, as in "yesterday"')))
 
     def _base_value(self, name: str) -> float | None:
         """Return what a constant is where nothing else is said: today's, else search's only value."""

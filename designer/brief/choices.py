@@ -23,7 +23,7 @@ LIMITS: Mapping[str, Limits] = {
     "fall_factor": Limits("number", 0, beyond=True),
     "terminal_speed": Limits("speed", 0, beyond=True, none=True),
     "step_up": Limits("length", 0),
-    "edge_allowance": Limits("length"),
+    "edge_allowance": Limits("length", 0),
 }
 """What each constant may be; the step, which is a time or a rate, is read by `Reader.step`."""
 

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from decimal import Decimal
 from difflib import get_close_matches
 
-from designer.brief.units import Misread
+from designer.brief.units import Misread, exact
 from designer.motion.measures import MEASURES
 from designer.motion.rule import CONSTANT_NAMES
 
@@ -73,20 +74,21 @@ NOT_YET = "not yet known in this version"
 
 
 def home(section: str) -> str:
-    """Return a table as it is written in a brief: "[rule]", "[[ledges]]", "the top of the file"."""
+    """Return where a table is in a brief: "in [rule]", "in [[ledges]]", "at the top of the file …"."""
     if not section:
-        return "the top of the file, before the first table"
+        return "at the top of the file, before the first table"
     if section == "targets.*":
-        return "a target of [targets], as in apex = { aim = …, within = … }"
+        return "in a target of [targets], as in apex = { aim = …, within = … }"
     if section.startswith("rule."):
-        part = section.removeprefix("rule.")
-        return f"[rule], inside {part} = {{ … }}"
-    return f"[[{section}]]" if section in LISTS else f"[{section}]"
+        return f"in [rule], inside {section.removeprefix('rule.')} = {{ … }}"
+    return f"in [[{section}]]" if section in LISTS else f"in [{section}]"
 
 
-def owners(key: str) -> list[str]:
-    """Return the tables that know a key, most likely first."""
-    return [section for section, keys in KNOWN.items() if key in keys and section != "sets"]
+def owners(key: str) -> str:
+    """Return where a key belongs, "in [today] or [search]"; empty where no table knows it."""
+    found = [section for section, keys in KNOWN.items() if key in keys and section != "sets"]
+    found = [section for section in found if "." not in section] or found
+    return " or ".join([home(section) for section in found]).replace(" or in ", " or ")
 
 
 def unknown_key(section: str, key: str) -> Misread:
@@ -95,27 +97,41 @@ def unknown_key(section: str, key: str) -> Misread:
         name = f"[{key}]" if not section and key not in ("with", "levels") else key
         return Misread(f"{name} is {NOT_YET}", fix=f"leave {name} out; this version answers without it")
     known = KNOWN[section]
-    allowed = f"in {home(section)}: {', '.join(known)}"
-    belongs = owners(key)
-    if belongs:
-        places = " or ".join(home(place) for place in belongs)
-        return Misread(allowed, fix=f"{key} belongs in {places}")
-    close = get_close_matches(key.lower().replace("-", "_"), known, 1, cutoff=0.6)
+    allowed = f"{home(section)}: {', '.join(known)}"
+    if owners(key):
+        return Misread(allowed, fix=f"{key} belongs {owners(key)}")
+    spelled = key.lower().replace("-", "_")
+    close = get_close_matches(spelled, known, 1, cutoff=0.6)
     if close:
         return Misread(allowed, fix=f"{_written(section, close[0])} is probably meant")
     everywhere = {name for keys in KNOWN.values() for name in keys}
-    close = get_close_matches(key.lower().replace("-", "_"), sorted(everywhere), 1, cutoff=0.75)
+    close = get_close_matches(spelled, sorted(everywhere), 1, cutoff=0.75)
     if close:
-        places = " or ".join(home(place) for place in owners(close[0]))
-        return Misread(allowed, fix=f"{close[0]} is probably meant; it belongs in {places}")
-    later = [home(place) for place, keys in LATER.items() if key in keys]
-    if later:
+        return Misread(allowed, fix=f"{close[0]} is probably meant; it belongs {owners(close[0])}")
+    if any(key in keys for keys in LATER.values()):
         return Misread(f"{key} is {NOT_YET}; {allowed}", fix=f"leave {key} out")
     return Misread(allowed, fix=f"take {key} out, or write # before it to keep it as a comment")
 
 
 def _written(section: str, key: str) -> str:
-    return home(key) if not section and key in TABLES + LISTS else key
+    """Return a key as it is written in its table, a table's name with its brackets."""
+    return home(key).removeprefix("in ") if not section and key in TABLES + LISTS else key
+
+
+def as_target(raw: object) -> str:
+    """Return the target that a bare value probably means, with a tolerance of 2 %."""
+    figures, _, unit = str(raw).strip().partition(" ")
+    try:
+        number = exact(Decimal(figures))
+    except ArithmeticError:
+        number = None
+    if isinstance(raw, bool) or number is None:
+        return "{ aim = 120, within = 2 }"
+    within = f"{abs(float(number)) / 50:.1g}" if number else "1"
+    within = format(Decimal(within), "f")
+    if unit:
+        return f'{{ aim = "{figures} {unit}", within = "{within} {unit}" }}'
+    return f"{{ aim = {figures}, within = {within} }}"
 
 
 def one_of(value: object, words: Iterable[str], later: Iterable[str] = ()) -> str:

@@ -18,7 +18,7 @@ class Spot:
     line: int
     """From 1."""
     text: str
-    """The value as written; for a table its header."""
+    """The value as written; empty for a table, whose header says its name only."""
 
 
 class Places:
@@ -76,14 +76,15 @@ class Places:
         keys = self._key()
         self._at += 2 if double else 1
         path = self._resolve(keys[:-1] if double else keys)
+        for length in range(1, len(path)):
+            self.spots.setdefault(path[:length], Spot(self._line(start), ""))
         if double:
             path += (keys[-1],)
-            spot = Spot(self._line(start), self._text[start : self._at])
-            self.spots.setdefault(path, spot)
+            self.spots.setdefault(path, Spot(self._line(start), ""))
             count = self._counts.get(path, 0)
             self._counts[path] = count + 1
             path += (count,)
-        self.spots[path] = Spot(self._line(start), self._text[start : self._at])
+        self.spots[path] = Spot(self._line(start), "")
         return path
 
     def _resolve(self, keys: list[str]) -> Path:

@@ -173,3 +173,8 @@ def join_names(names: Sequence[str]) -> str:
         else:
             parts += [rate_name(Fraction(n), unit) for n in dict.fromkeys((first, last))]
     return ", ".join(parts)
+
+
+def step_of_hz(hz: int, frame_time: FrameTime) -> float:
+    """Return the step in seconds that a whole rate in Hz becomes."""
+    return step_of(Fraction(hz), "Hz", frame_time)

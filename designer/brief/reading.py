@@ -41,10 +41,14 @@ def parse_brief(text: str, file_name: str) -> Brief:
         raise InputError(*slips)
     builder = Builder(raw, Path(file_name).stem)
     brief = builder.build()
-    # Where TOML had to be put right first, only what the corrections do not explain is added.
+    faults = slips + _faults(builder.wrong, lines.Places(text), file_name)
+    # A correction may have repeated what it found: on such a line the same advice once is enough.
     corrected = {slip.place for slip in slips}
-    faults = _faults(builder.wrong, lines.Places(text), file_name)
-    faults = slips + [fault for fault in faults if fault.place not in corrected]
+    advice = {
+        (f.place, f.allowed, f.fix) if f.place in corrected else (f.place, f.field, f.allowed): f
+        for f in reversed(faults)
+    }
+    faults = list(reversed(advice.values()))
     if brief is None or faults:
         raise InputError(*faults)
     return brief
@@ -121,12 +125,6 @@ def _faults(wrong: Iterable[tuple[lines.Path, Misread]], places: lines.Places, n
         lead = f"{key} = " if path and isinstance(path[-1], str) else ""
         fix = misread.fix or f"write {lead}{misread.better}"
         value = own.text if own else ""
-        if (
-            value.startswith("[")
-            and isinstance(path[-1], str)
-            and value.strip("[]").split(".")[-1].strip() == key
-        ):
-            value = ""  # a table's own header says nothing that its name does not
         value = value if len(value) <= 80 else value[:77] + "…"
         fault = Fault(place, dotted(path), " ".join(value.split()), misread.allowed, fix)
         numbered.append((near.line if near else float("inf"), fault))

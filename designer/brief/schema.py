@@ -12,7 +12,7 @@ from typing import Annotated, Any
 from pydantic import BaseModel, ConfigDict, PlainValidator, ValidationError, ValidationInfo, create_model
 
 from designer.brief.choices import LIMITS, Reader
-from designer.brief.keys import LISTS, NOT_YET, one_of, unknown_key
+from designer.brief.keys import LISTS, NOT_YET, as_target, one_of, unknown_key
 from designer.brief.model import Choice, Loop, Rate
 from designer.brief.rates import read_rate, read_rates
 from designer.brief.units import Limits, Misread, Misreadings, Units, exact
@@ -146,11 +146,11 @@ class RuleTable(Table):
 class TargetTable(Table):
     """One target of [targets]."""
 
-    within: Within
-    weight: Positive = 1.0
     aim: Annotated[float | None, _with_context(_aim)] = None
     at_least: Bound = None
     at_most: Bound = None
+    within: Within
+    weight: Positive = 1.0
 
 
 class RatesTable(Table):
@@ -225,7 +225,7 @@ def check_table(
 ) -> tuple[Any | None, list[tuple[Path, Misread]]]:
     """Return a table's model (None where something is wrong in it) and what is wrong, with paths."""
     if not isinstance(raw, dict):
-        return None, [(at, wrong_shape(section))]
+        return None, [(at, wrong_shape(section, raw))]
     try:
         return (TargetTable if section == "targets" else MODELS[section]).model_validate(
             raw, context=context
@@ -234,16 +234,21 @@ def check_table(
         return None, _unwrap(section, error, at)
 
 
-def wrong_shape(section: str) -> Misread:
+def wrong_shape(section: str, raw: object) -> Misread:
     """Return what to say where a table is wanted and something else stands."""
     if section == "targets":
-        return Misread(
-            "a table { aim = …, within = … } or { at_least = …, at_most = …, within = … }",
-            fix="write the wish with its tolerance, as in { aim = 120, within = 2 }",
-        )
+        allowed = "a table { aim = …, within = … } or { at_least = …, at_most = …, within = … }"
+        return Misread(allowed, better=as_target(raw))
     if section in LISTS:
-        return Misread(f"one or more tables, each under its own [[{section}]]", fix=f"write [[{section}]]")
-    return Misread(f"a table: [{section}] alone on a line, its keys below it", fix=f"write [{section}]")
+        allowed = f"one or more tables, each under its own header [[{section}]] in double square brackets"
+        names = [key for key, item in raw.items() if isinstance(item, dict)] if isinstance(raw, dict) else []
+        below = f', and below it name = "{names[0]}"' if names else ""
+        return Misread(
+            allowed, fix=f"write [[{section}]] instead of [{section}{'.' + names[0] if names else ''}]{below}"
+        )
+    single = "; in single square brackets" if isinstance(raw, list) else ""
+    allowed = f"a table: [{section}] alone on a line, its keys below it{single}"
+    return Misread(allowed, fix=f"write [{section}]")
 
 
 def _unwrap(section: str, error: ValidationError, at: Path) -> list[tuple[Path, Misread]]:
@@ -286,7 +291,7 @@ def read_units(raw: object) -> tuple[Units, list[tuple[Path, Misread]]]:
     if raw is None:
         return Units(), []
     if not isinstance(raw, dict):
-        return Units(), [(("units",), wrong_shape("units"))]
+        return Units(), [(("units",), wrong_shape("units", raw))]
     wrong: list[tuple[Path, Misread]] = []
     length, named = "unit", {}
     for key, value in raw.items():
@@ -314,7 +319,7 @@ def _time_unit(value: object) -> None:
 
 def _named_length(key: str, value: object) -> Fraction:
     belongs = unknown_key("units", key)
-    if " belongs in " in belongs.fix:
+    if " belongs " in belongs.fix:
         raise Misread("in [units]: length, time and names of lengths", fix=belongs.fix)
     allowed = "a named length: a number above 0 in the length unit, as in tile = 64"
     if re.fullmatch(r"[^\W\d][\w-]*", key) is None or key in ("s", "ms", "Hz", "none"):

@@ -15,6 +15,8 @@ LARGEST = 10**12
 
 _NUMBER = re.compile(r"([+-]?\d+(?:_\d+)*(?:\.\d+)?(?:[eE][+-]?\d+)?)\s*(.*)", re.DOTALL)
 _PER = {"length": "", "speed": "/s", "acceleration": "/s^2"}
+_EXAMPLE = {"length": "1.75", "speed": "5", "acceleration": "20"}
+_MILLIMETRES = {"mm": 1, "cm": 10, "dm": 100, "m": 1000, "km": 1_000_000}
 _KIND_WORDS = {
     "length": "a length",
     "speed": "a speed",
@@ -89,7 +91,7 @@ class Units:
             return words + ' in seconds (0.76) or as text with its unit ("760 ms")'
         if kind not in _PER:
             return words if kind == "number" else words + ", a plain number"
-        names = " or ".join(f'"1.75 {name}{_PER[kind]}"' for name in list(self.named)[:2])
+        names = " or ".join(f'"{_EXAMPLE[kind]} {name}{_PER[kind]}"' for name in list(self.named)[:2])
         return f"{words} in {self.unit_of(kind)}, as a number" + (
             f" or as text like {names}" if names else ""
         )
@@ -141,17 +143,17 @@ class Units:
             raise Misread(
                 f"{allowed}; the unit is {self.unit_of(kind)}", better=f'"{figures} {spelled}{_PER[kind]}"'
             )
-        close = get_close_matches(spelled, known, 1)
         names = ", ".join(name.replace("^2", "²") for name in known)
         words = f"{allowed}; units known here: {names}"
-        if close:
+        close = get_close_matches(spelled, known, 1)
+        if close and len(spelled) > 2:
             raise Misread(words, better=f'"{figures} {close[0]}"')
         base = re.split(r"[/^]", spelled)[0]
         if kind in _PER and base.isidentifier():
-            raise Misread(
-                words,
-                fix=f"write the number in {self.unit_of(kind)}, or say in [units] how long one is: {base} = …",
-            )
+            both = base in _MILLIMETRES and self.length in _MILLIMETRES
+            size = plain(Fraction(_MILLIMETRES[base], _MILLIMETRES[self.length])) if both else "…"
+            fix = f"write the number in {self.unit_of(kind)}, or say in [units] how long one is: {base} = {size}"
+            raise Misread(words, fix=fix)
         raise Misread(words, fix="write the number in one of these units")
 
     def _known(self, kind: str) -> dict[str, Fraction]:

@@ -44,10 +44,13 @@ class Commands(click.Group):
 def leapwright() -> None:
     """Jump constants that hold at every frame rate.
 
-    Write what the game wants into a brief, and search: leapwright new my-game.toml, then
-    leapwright search my-game.toml.
+    Write what the game wants into a brief, then search:
 
-    Exit status: 0 done; 1 done, and the answer is no (a ledge fails, nothing feasible); 2 could not.
+    \b
+      leapwright new my-game.toml
+      leapwright search my-game.toml
+
+    Exit status: 0 done; 1 done, and the answer is no (a ledge fails, nothing is feasible); 2 could not.
     """
 
 

@@ -89,7 +89,8 @@ def advance(codes: Codes, numbers: Numbers, step: float, state: State, loss: flo
 def fly(codes: Codes, numbers: Numbers, step: float, level: float, count_near: bool) -> Outcome:
     """Return (status, steps, apex, apex_step, fraction, landing_velocity, near_apex_steps) of one jump.
 
-    near_apex_steps is −1 unless `count_near`: counting needs the apex first, so it flies twice.
+    near_apex_steps is −1 unless `count_near`: counting needs the apex first, so it flies twice. A level
+    above 0 that is not reached by step N is out of reach, unless the jump never slows.
     """
     outcome = _flight(codes, numbers, step, level, math.inf)
     if not count_near:

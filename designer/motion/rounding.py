@@ -75,7 +75,8 @@ def snap_array(x: ArrayLike, grain: ArrayLike, mode: Mode) -> NDArray[np.float64
     numbers = np.asarray(x, dtype=np.float64)
     grains = np.asarray(grain, dtype=np.float64)
     unrounded = grains == 0.0
-    ratio = numbers / np.where(unrounded, 1.0, grains)
+    grains = np.where(unrounded, 1.0, grains)
+    ratio = numbers / grains
     wholes = np.where(np.abs(ratio) >= ALL_WHOLE, ratio, _whole_array(ratio, Mode(mode)))
     return np.where(unrounded, numbers, wholes * grains + 0.0)
 

@@ -49,7 +49,12 @@ class Trace:
     unrounded: NDArray[np.float64]
     """u, the velocity before it was rounded, length/s; entry 0 is the launch speed."""
     status: Status
-    """Whether the jump lands at the level; where it does not, the arrays stop after a number of steps."""
+    """How the jump ends; where it does not land at the level, the arrays stop after a number of steps."""
+
+    @property
+    def lands(self) -> bool:
+        """Whether the jump lands at the level that was asked for."""
+        return self.status is Status.LANDS
 
 
 def simulate(
@@ -169,11 +174,11 @@ def _is_large(launches: Launches, level: float, size: int) -> bool:
     if size > PLAIN_STEPS:
         return True
     gravity, launch_speed, step, _, fall_factor, _ = launches.broadcast()
-    rise = np.abs(launch_speed) / gravity
-    drop = 0.5 * launch_speed * rise + max(-level, 0.0)
-    with np.errstate(divide="ignore"):
+    with np.errstate(all="ignore"):
+        rise = np.abs(launch_speed) / gravity
+        drop = 0.5 * launch_speed * rise + max(-level, 0.0)
         flight = rise + np.sqrt(2.0 * np.maximum(drop, 0.0) / (gravity * fall_factor))
-    return float(np.sum(np.fmin(flight, LONGEST_FLIGHT) / step)) > PLAIN_STEPS
+        return float(np.sum(np.fmin(flight, LONGEST_FLIGHT) / step)) > PLAIN_STEPS
 
 
 def _validate(rule: Rule, launches: Launches, level: float, workers: int) -> None:

@@ -4,13 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from fractions import Fraction
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from designer.brief.model import Brief, Ledge
-from designer.brief.rates import step_of
+from designer.brief.rates import step_of_hz
 from designer.motion.batch import fly_many
 from designer.motion.rule import Constants
 from designer.objective.score import NEGLIGIBLE, gap_spare, ledge_spare
@@ -54,7 +53,7 @@ def sweep_rates(
 ) -> RateSweep:
     """Measure one set at every whole rate from 20 to 1000 Hz; rates with the same step are flown once."""
     hz = np.arange(LOWEST_HZ, HIGHEST_HZ + 1)
-    steps = np.array([step_of(Fraction(int(rate)), "Hz", brief.rule.frame_time) for rate in hz])
+    steps = np.array([step_of_hz(int(rate), brief.rule.frame_time) for rate in hz])
     distinct, where = np.unique(steps, return_inverse=True)
     # Each step is a design of its own with one rate: then nominal, smallest and largest are all its value.
     designs = Designs.of([constants] * len(distinct))

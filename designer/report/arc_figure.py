@@ -29,9 +29,15 @@ class ArcPicture:
     """Arcs of today, drawn in grey first; empty where there is no today or it is the set itself."""
     x_range: tuple[float, float]
     y_range: tuple[float, float]
+    inset: tuple[float, float, float, float]
+    """Where the enlarged apex is drawn, in the room under the arcs: x, y, width, height, data units."""
+    inset_x: tuple[float, float]
+    inset_y: tuple[float, float]
+    """What the enlarged apex shows."""
     thickness: float
     """How thick slabs and ground are drawn, length."""
-    title_width: int = style.TITLE_WIDTH
+    small: bool = False
+    """One panel among several: a smaller title."""
 
 
 def arcs(ax: Axes, picture: ArcPicture) -> Axes:
@@ -47,23 +53,54 @@ def arcs(ax: Axes, picture: ArcPicture) -> Axes:
         _slab(ax, ledge, picture.thickness)
     for gap in scene.gaps:
         _far_side(ax, gap, picture)
+    _paths(ax, picture)
+    _enlarge(ax, picture)
+    ax.set_xlabel(f"distance run ({picture.unit})" if scene.by_distance else "time since launch (s)")
+    ax.set_ylabel(f"height ({picture.unit})")
+    head(ax, picture.title, picture.subtitle, small=picture.small)
+    _names(ax, picture)
+    return ax
+
+
+def _paths(ax: Axes, picture: ArcPicture) -> None:
+    """Draw today's arcs in grey, then the set's, the nominal one bold."""
     for arc in picture.under:
         ax.plot(arc.x, arc.y, color=style.TODAY, linewidth=1.3, alpha=0.85, zorder=2.0)
-    for arc in scene.arcs:
+    for arc in picture.scene.arcs:
         strong = arc.nominal
         ax.plot(
             arc.x,
             arc.y,
             color=picture.look.colour,
-            linewidth=2.0 if strong else 0.8,
-            alpha=1.0 if strong else 0.75,
+            linewidth=2.0 if strong else 0.9,
+            alpha=1.0 if strong else 0.8,
             zorder=2.6 if strong else 2.4,
         )
-    ax.set_xlabel(f"distance run ({picture.unit})" if scene.by_distance else "time since launch (s)")
-    ax.set_ylabel(f"height ({picture.unit})")
-    head(ax, picture.title, picture.subtitle, picture.title_width)
-    _names(ax, picture)
-    return ax
+
+
+def _enlarge(ax: Axes, picture: ArcPicture) -> None:
+    """Draw the apex once more, enlarged, in the room under the arcs: ledges are lines there."""
+    inset = ax.inset_axes(picture.inset, transform=ax.transData, zorder=5)
+    inset.set_xlim(*picture.inset_x)
+    inset.set_ylim(*picture.inset_y)
+    _paths(inset, picture)
+    for ledge in picture.scene.ledges:
+        inset.axhline(
+            ledge.height, color=style.SOLID, linewidth=1.2, linestyle=style.LEDGE_DASH[ledge.must], zorder=2.3
+        )
+    inset.set_xticks([])
+    inset.locator_params(axis="y", nbins=4)
+    inset.tick_params(labelsize=style.FONT_SMALL - 1, length=2, pad=2)
+    for side in ("top", "right"):
+        inset.spines[side].set_visible(True)
+    inset.set_title("apex, enlarged", fontsize=style.FONT_SMALL - 1, fontweight="normal", pad=2, loc="center")
+    ax.plot(
+        [*picture.inset_x, *picture.inset_x[::-1], picture.inset_x[0]],
+        [picture.inset_y[0]] * 2 + [picture.inset_y[1]] * 2 + [picture.inset_y[0]],
+        color=style.QUIET,
+        linewidth=0.7,
+        zorder=2.9,
+    )
 
 
 def _ground(ax: Axes, picture: ArcPicture) -> None:
@@ -82,7 +119,7 @@ def _box(x: float, y: float, width: float, height: float, must: str):  # type: i
         (x, y),
         width,
         height,
-        facecolor=style.PAPER if keep_out else style.SOLID,
+        facecolor="none" if keep_out else style.SOLID,
         edgecolor=style.SOLID,
         linestyle=style.LEDGE_DASH[must] if keep_out else "solid",
         linewidth=1.2 if keep_out else 0.8,
@@ -91,7 +128,15 @@ def _box(x: float, y: float, width: float, height: float, must: str):  # type: i
 
 
 def _slab(ax: Axes, ledge: LedgeShape, thickness: float) -> None:
-    """Draw a ledge: a slab whose top is at its height."""
+    """Draw a ledge: a slab whose top is at its height, and a thin line from it to its name."""
+    ax.plot(
+        [ledge.x_to, ax.get_xlim()[1]],
+        [ledge.height, ledge.height],
+        color=style.QUIET,
+        linewidth=0.6,
+        linestyle=(0, (1, 2)),
+        zorder=1.4,
+    )
     ax.add_patch(
         _box(ledge.x_from, ledge.height - thickness, ledge.x_to - ledge.x_from, thickness, ledge.must)
     )

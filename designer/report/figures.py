@@ -51,6 +51,8 @@ class Breach:
     demand: int
     where: NDArray[np.bool_]
     """(rates,)."""
+    counts: bool = True
+    """False beyond the supported rates, where it is drawn paler."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,23 +66,28 @@ class ReachPicture:
     demands: tuple[Demand, ...]
     breaches: tuple[Breach, ...]
     supported: tuple[float, ...]
-    """Hz, the real rates that the steps come to."""
+    """Hz."""
+    watched: tuple[float, ...]
+    """Hz: shown, but nothing is demanded there."""
     y_range: tuple[float, float]
     remarks: tuple[str, ...] = ()
     """Short sentences for the foot: what is off the scale, what never lands."""
     x_label: str = "frame rate (Hz)"
     label_threads: bool = True
+    small: bool = False
+    """One panel among several: a smaller title."""
 
 
 RATE_TICKS = (20, 30, 40, 60, 90, 120, 180, 240, 360, 500, 700, 1000)
 
 
-def head(ax: Axes, title: str, subtitle: str = "", width: int = style.TITLE_WIDTH) -> None:
+def head(ax: Axes, title: str, subtitle: str = "", *, small: bool = False) -> None:
     """Write the finding over a picture, and in small what it shows."""
+    width = style.TITLE_WIDTH_SMALL if small else style.TITLE_WIDTH
     lines = textwrap.fill(title, width)
-    below = textwrap.fill(subtitle, int(width * 1.3)) if subtitle else ""
+    below = textwrap.fill(subtitle, int(width * 1.45)) if subtitle else ""
     room = (below.count("\n") + 1) * style.FONT_SMALL * 1.25 + 4.0 if below else 0.0
-    ax.set_title(lines, pad=10.0 + room)
+    ax.set_title(lines, pad=10.0 + room, fontsize=style.FONT_PANEL if small else style.FONT_TITLE)
     if below:
         ax.annotate(
             below,
@@ -90,6 +97,26 @@ def head(ax: Axes, title: str, subtitle: str = "", width: int = style.TITLE_WIDT
             textcoords="offset points",
             fontsize=style.FONT_SMALL,
             color=style.QUIET,
+            va="bottom",
+            annotation_clip=False,
+        )
+
+
+def banner(ax: Axes, title: str, subtitle: str) -> None:
+    """Write one heading over a row of panels, above the small title of the first."""
+    for text, up, size, weight, colour in (
+        (title, 46, style.FONT_TITLE, "bold", style.INK),
+        (subtitle, 28, style.FONT_SMALL, "normal", style.QUIET),
+    ):
+        ax.annotate(
+            text,
+            (0, 1),
+            (0, up),
+            xycoords="axes fraction",
+            textcoords="offset points",
+            fontsize=size,
+            fontweight=weight,
+            color=colour,
             va="bottom",
             annotation_clip=False,
         )
@@ -117,6 +144,7 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
             edgecolor=style.BREACH_TEXT,
             hatch=style.HATCH,
             linewidth=0.6,
+            alpha=1.0 if breach.counts else style.PALE,
             zorder=2.2,
         )
     for order, thread in enumerate(picture.threads):
@@ -131,20 +159,24 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
             solid_capstyle="butt",
             zorder=2.5 + 0.01 * order,
         )
-    _rug(ax, picture.supported)
+    _rug(ax, picture.supported, style.INK)
+    _rug(ax, picture.watched, style.PAPER)
+    if picture.supported:
+        for start, end in ((1.0, min(picture.supported)), (max(picture.supported), 1e6)):
+            ax.axvspan(start, end, facecolor=style.OUTSIDE, linewidth=0, zorder=0.2)
     ax.set_xlabel(picture.x_label)
     ax.set_ylabel(picture.y_label)
-    head(ax, picture.title, picture.subtitle)
+    head(ax, picture.title, picture.subtitle, small=picture.small)
     _reach_labels(ax, picture)
     if picture.remarks:
-        _foot(ax, "\n".join(picture.remarks))
+        _foot(ax, picture.remarks)
     return ax
 
 
 def _demand(ax: Axes, demand: Demand, y_range: tuple[float, float]) -> None:
     """Draw one demand: its line and, where it has a margin, a pale band up to the bound."""
     ax.axhline(
-        demand.value, color=style.SOLID, linewidth=1.3, linestyle=style.LEDGE_DASH[demand.must], zorder=2.0
+        demand.value, color=style.SOLID, linewidth=1.3, linestyle=style.LEDGE_DASH[demand.must], zorder=2.3
     )
     if demand.bound != demand.value:
         ax.axhspan(
@@ -157,8 +189,8 @@ def _demand(ax: Axes, demand: Demand, y_range: tuple[float, float]) -> None:
         )
 
 
-def _rug(ax: Axes, rates: Sequence[float]) -> None:
-    """Mark the supported rates at the foot of the axes."""
+def _rug(ax: Axes, rates: Sequence[float], fill: str) -> None:
+    """Mark rates at the foot of the axes."""
     low, high = ax.get_xlim()
     shown = [rate for rate in rates if low <= rate <= high]
     ax.plot(
@@ -168,7 +200,8 @@ def _rug(ax: Axes, rates: Sequence[float]) -> None:
         linestyle="none",
         marker="^",
         markersize=6,
-        color=style.INK,
+        markerfacecolor=fill,
+        markeredgecolor=style.INK,
         clip_on=False,
         zorder=4,
     )
@@ -192,8 +225,9 @@ def _reach_labels(ax: Axes, picture: ReachPicture) -> None:
     labels.column(ax, heights, texts, colours, bold)
 
 
-def _foot(ax: Axes, text: str) -> None:
+def _foot(ax: Axes, remarks: Sequence[str]) -> None:
     """Write remarks under the axis label."""
+    text = "\n".join(textwrap.fill(remark, style.FOOT_WIDTH, subsequent_indent="    ") for remark in remarks)
     ax.annotate(
         text,
         (0, 0),
@@ -279,14 +313,14 @@ def front(ax: Axes, picture: FrontPicture) -> Axes:
                 zorder=4,
             )
         )
-    ax.set_xlabel("rate spread (tolerances): how far measures differ over the rates")
-    ax.set_ylabel("miss (tolerances): how far from what was wanted")
+    ax.set_xlabel("rate spread (tolerances)")
+    ax.set_ylabel("miss (tolerances)")
     head(ax, picture.title, picture.subtitle)
     spots = [(point.rate_spread, point.miss) for point in picture.named]
     others = list(zip(picture.front_spread.tolist(), picture.front_miss.tolist(), strict=True))
     labels.beside(ax, [*spots, *others], texts, len(spots))
     if picture.remarks:
-        _foot(ax, "\n".join(picture.remarks))
+        _foot(ax, picture.remarks)
     return ax
 
 
@@ -322,10 +356,10 @@ def sensitivity(ax: Axes, name: str, bars: Sequence[Bar], limit: float, row_labe
             linewidth=0.8,
             zorder=2,
         )
-        number = f"{bar.value:+.2f}".replace("-", "−")
-        beyond = " (off scale)" if shown != bar.value else ""
-        colour = style.BREACH_TEXT if bar.flip else style.INK
-        _bar_text(ax, row, shown, number + beyond + (" flip" if bar.flip else ""), colour, limit)
+        if shown != bar.value:
+            ax.plot([shown], [row], marker=">" if shown > 0 else "<", color=style.INK, clip_on=False, zorder=4)
+        number = f"{bar.value:+.2f}".replace("-", "−") if abs(bar.value) >= 0.005 else "0"
+        _bar_text(ax, row, shown, number, style.BREACH_TEXT if bar.flip else style.INK, limit)
     ax.set_yticks(rows, [bar.label for bar in bars] if row_labels else [""] * len(bars))
     ax.tick_params(axis="y", length=0)
     for side in ("left", "bottom"):

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Sequence
 
-from designer.brief.model import Brief, Gap, Ledge
+from designer.brief.model import Brief, Gap, Ledge, Rate
 from designer.objective.verdict import FeatureVerdict, Verdict
 from designer.search.result import Candidate, SearchResult
 
@@ -26,7 +27,7 @@ def bands_text(bands: Sequence[str], most: int = MOST_BANDS) -> str:
     shown = [band.removesuffix(" Hz") for band in bands[:most]]
     rest = len(bands) - len(shown)
     if rest:
-        return f"{', '.join(shown)} Hz and {rest} more band{'s' if rest > 1 else ''}"
+        return f"{', '.join(shown)} Hz and {rest if rest > 1 else 'one'} more band{'s' if rest > 1 else ''}"
     head = ", ".join(shown[:-1])
     return f"{head} and {shown[-1]} Hz" if head else f"{shown[-1]} Hz"
 
@@ -60,28 +61,90 @@ def failing_clause(kind: str, must: str, name: str, bands: Sequence[str], most: 
     return f"{name} {CLAUSES[kind, must]} at {bands_text(bands, most)}"
 
 
-def compare(kind: str, today: Verdict | None, best: Candidate, brief: Brief) -> str:
-    """Return the finding about ledges or gaps: what fails today, where, and what becomes of it."""
+def compare(
+    kind: str, today: Verdict | None, best: Candidate, brief: Brief, only: Sequence[int] | None = None
+) -> str:
+    """Return the finding about ledges or gaps: what fails today, where, and what becomes of it.
+
+    `only` names the indices to speak of; None means all. Empty where the brief has none of the kind.
+    """
     label = best.label or "the best"
-    rows = [(index, feature) for what, index, feature in features(brief) if what == kind]
+    rows = [
+        (index, feature)
+        for what, index, feature in features(brief)
+        if what == kind and (only is None or index in only)
+    ]
     if not rows:
         return ""
+    span = supported_span(brief)
     now = {index: judged(best.verdict, kind, index).failing for index, _ in rows}
     if today is not None:
-        was = {index: judged(today, kind, index).failing for index, _ in rows}
-        index, feature = max(rows, key=lambda row: width_of(was[row[0]]) - 0.5 * width_of(now[row[0]]))
-        if was[index]:
-            clause = failing_clause(kind, feature.must, feature.name, was[index])
-            return f"Today {clause}; with {label} {_still(now[index])}"
-    index, feature = max(rows, key=lambda row: width_of(now[row[0]]))
-    if now[index]:
-        return f"With {label} {failing_clause(kind, feature.must, feature.name, now[index])}"
+        was = {index: judged(today, kind, index) for index, _ in rows}
+
+        def weight(row: tuple[int, Ledge | Gap]) -> tuple[bool, int]:
+            found = was[row[0]]
+            return not found.holds, width_of(touching(found.failing, span)) - width_of(now[row[0]])
+
+        index, feature = max(rows, key=weight)
+        telling = touching(was[index].failing, span)
+        if telling:
+            clause = failing_clause(kind, feature.must, feature.name, telling)
+            return f"Today {clause}; with {label} {_still(now[index], span)}"
+    index, feature = max(rows, key=lambda row: width_of(touching(now[row[0]], span)))
+    telling = touching(now[index], span)
+    if telling:
+        return f"With {label} {failing_clause(kind, feature.must, feature.name, telling)}"
     also = "today and " if today is not None else ""
-    return f"Every {kind} holds from {FULL_RANGE}, {also}with {label}"
+    whole = not any(now.values()) and (today is None or not any(one.failing for one in was.values()))
+    return f"Every {kind} holds from {FULL_RANGE if whole else _span_text(span)}, {also}with {label}"
 
 
-def _still(bands: Sequence[str]) -> str:
-    return f"at {bands_text(bands)}" if bands else "never"
+def hz_of(rate: Rate) -> list[float]:
+    """Return the rates in Hz that a merged rate names; for steps in ms, what they come to."""
+    found: list[float] = []
+    for first, last in re.findall(r"(\d+(?:\.\d+)?)(?:–(\d+))? Hz", rate.name):
+        found += range(int(first), int(last) + 1) if last else [float(first)]
+    return found or [1.0 / rate.step]
+
+
+def supported_span(brief: Brief) -> tuple[float, float]:
+    """Return the lowest and highest supported rate, Hz."""
+    hz = [value for rate in brief.rates.supported for value in hz_of(rate)]
+    return (min(hz), max(hz)) if hz else (20.0, 1000.0)
+
+
+def touching(bands: Sequence[str], span: tuple[float, float]) -> tuple[str, ...]:
+    """Return the bands that reach into the span of the supported rates."""
+    kept = []
+    for band in bands:
+        ends = [int(part) for part in band.removesuffix(" Hz").split("–")]
+        if ends[0] <= span[1] and ends[-1] >= span[0]:
+            kept.append(band)
+    return tuple(kept)
+
+
+def _span_text(span: tuple[float, float]) -> str:
+    return f"{span[0]:g} to {span[1]:g} Hz"
+
+
+def _still(bands: Sequence[str], span: tuple[float, float]) -> str:
+    """Say where a demand still fails with the best: nowhere, only outside the supported rates, or where."""
+    if not bands:
+        return "never"
+    within = touching(bands, span)
+    return f"at {bands_text(within)}" if within else f"at no rate from {_span_text(span)}"
+
+
+def outside_sentences(brief: Brief, kind: str, name: str, verdict: Verdict) -> list[str]:
+    """Return what fails beyond the supported rates: nobody's demand, but worth knowing."""
+    span = supported_span(brief)
+    said = []
+    for what, index, feature in features(brief):
+        bands = judged(verdict, what, index).failing
+        beyond = [band for band in bands if band not in touching(bands, span)]
+        if what == kind and beyond:
+            said.append(failing_clause(kind, feature.must, feature.name, beyond))
+    return [f"{name}, beyond the supported rates: {'; '.join(said)}."] if said else []
 
 
 def reach_title(today: Verdict | None, best: Candidate, brief: Brief) -> str:
@@ -117,15 +180,20 @@ def front_title(result: SearchResult) -> str:
     )
 
 
-def arc_title(name: str, verdict: Verdict) -> str:
+def arc_title(name: str, verdict: Verdict, brief: Brief) -> str:
     """Return what the arcs of one set show: whether every demand holds at the supported rates."""
-    broken = [one.name for one in (*verdict.ledges, *verdict.gaps) if not one.holds]
-    said = name if name == "today" else f"set {name}"
-    said = said[0].upper() + said[1:]
     if not verdict.ledges and not verdict.gaps:
         apex = verdict.jumps[0].nominal.measures.get("apex")
-        return f"{said}: apex {apex:.4g}" if apex is not None else f"{said}: the jump never lands"
+        return f"{name}: apex {apex:.4g}" if apex is not None else f"{name}: the jump never lands"
+    broken = [
+        (kind, feature, judged(verdict, kind, index))
+        for kind, index, feature in features(brief)
+        if not judged(verdict, kind, index).holds
+    ]
     if not broken:
-        return f"{said}: every ledge and gap holds at every supported rate"
-    more = f" and {len(broken) - 2} more" if len(broken) > 2 else ""
-    return f"{said}: {' and '.join(broken[:2])}{more} fail{'s' if len(broken) == 1 else ''}"
+        return f"{name}: every demand holds at the supported rates"
+    kind, feature, found = broken[0]
+    more = f", and {len(broken) - 1} more fail{'s' if len(broken) == 2 else ''}" if len(broken) > 1 else ""
+    if found.worst_rate is None:
+        return f"{name}: the jump never lands at a rate that counts"
+    return f"{name}: {feature.name} {CLAUSES[kind, feature.must]} at {found.worst_rate}{more}"

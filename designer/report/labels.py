@@ -106,7 +106,7 @@ def beside(ax: Axes, points: Sequence[tuple[float, float]], texts: Sequence[Text
     for index, text in enumerate(texts[:keep]):
         size = text.get_window_extent(renderer)
         best: tuple[float, Bbox] | None = None
-        for distance in (7.0, 12.0, 18.0, 26.0, 36.0, 50.0):
+        for distance in (9.0, 13.0, 18.0, 26.0, 36.0, 50.0):
             for angle in np.deg2rad([20, -20, 70, -70, 160, -160, 110, -110]):
                 box = _box(pixels[index], (size.width, size.height), distance * unit, float(angle))
                 hidden = _hidden(box, pixels, taken, inside, unit)

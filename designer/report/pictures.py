@@ -5,27 +5,30 @@ from __future__ import annotations
 import io
 import re
 import warnings
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 from xml.sax.saxutils import escape
 
 import matplotlib
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
+from matplotlib.transforms import Bbox
 
 from designer.brief.model import Brief
-from designer.report import builds, figures, style
-from designer.report.arc_figure import ArcPicture, arcs
-from designer.report.figures import ReachPicture
+from designer.report import build_arcs, build_front, build_reach, build_sensitivity, figures, style
+from designer.report.arc_figure import arcs
 from designer.report.results import write_whole
+from designer.report.shown import best_of, pair, shown
 from designer.search.result import Candidate, SearchResult
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 ALT_FILE = "alt.txt"
+MARGIN = 0.2
+"""Blank inches around a picture."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,6 +38,11 @@ class Picture:
     name: str
     figure: Figure
     alt: str
+
+    def box(self) -> Bbox:
+        """Return what to write: everything drawn and a margin, in inches."""
+        renderer = self.figure.canvas.get_renderer()  # type: ignore[attr-defined]
+        return self.figure.get_tightbbox(renderer).padded(MARGIN)
 
 
 def make_pictures(brief: Brief, result: SearchResult, folder: Path) -> list[Path]:
@@ -49,7 +57,8 @@ def make_pictures(brief: Brief, result: SearchResult, folder: Path) -> list[Path
         # A name in a script that the shipped font lacks is drawn as boxes; alt.txt still has it.
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
         for picture in draw_all(brief, result):
-            for suffix, data in (("png", png_bytes(picture)), ("svg", svg_bytes(picture))):
+            box = picture.box()
+            for suffix, data in (("png", png_bytes(picture, box)), ("svg", svg_bytes(picture, box))):
                 path = folder / f"{picture.name}.{suffix}"
                 write_whole(path, data)
                 files.append(path)
@@ -60,19 +69,16 @@ def make_pictures(brief: Brief, result: SearchResult, folder: Path) -> list[Path
 
 def draw_all(brief: Brief, result: SearchResult) -> Iterator[Picture]:
     """Yield each picture, drawn; call within rc_context(style.RC)."""
-    best = builds.best_of(result)
+    best = best_of(result)
     if best is None:
         return
     yield reach_picture(brief, result, best)
-    shown = builds.shown(result)
-    if len(shown) > 1 and any(name != "today" for name, _ in shown):
+    if len(shown(result)) > len(pair(result, best)):
         yield reach_panels(brief, result)
     if brief.gaps:
         yield gap_picture(brief, result, best)
     yield arc_picture(brief, result)
-    front = builds.front(result)
-    if front is not None:
-        yield Picture("front", *_single(figures.front, front), alt=builds.front_alt(front))
+    yield from front_picture(result)
     yield from sensitivity_picture(brief, best)
 
 
@@ -82,82 +88,76 @@ def _figure(size: tuple[float, float]) -> Figure:
     return figure
 
 
-def _single(draw: Any, data: Any) -> tuple[Figure]:
-    figure = _figure((7.6, 5.4))
-    draw(figure.add_axes((0.1, 0.12, 0.86, 0.74)), data)
-    return (figure,)
+def front_picture(result: SearchResult) -> Iterator[Picture]:
+    """Draw miss against rate spread; nothing where no set has a score."""
+    data = build_front.front(result)
+    if data is None:
+        return
+    figure = _figure(style.SIZE_WIDE)
+    figures.front(figure.add_axes((0.08, 0.12, 0.88, 0.72)), data)
+    yield Picture("front", figure, build_front.front_alt(data))
 
 
 def reach_picture(brief: Brief, result: SearchResult, best: Candidate) -> Picture:
     """Draw reach against frame rate: today and the best over the ledges. The picture that sells."""
-    data = builds.reach(brief, builds.pair(result, best), builds.reach_title(brief, result, best))
+    data = build_reach.reach(brief, pair(result, best), build_reach.reach_title(brief, result, best))
     figure = _figure(style.SIZE_WIDE)
     figures.reach_by_rate(figure.add_axes((0.08, 0.12, 0.72, 0.72)), data)
-    return Picture("reach-by-rate", figure, builds.reach_alt(data))
+    return Picture("reach-by-rate", figure, build_reach.reach_alt(data))
 
 
 def reach_panels(brief: Brief, result: SearchResult) -> Picture:
     """Draw the same for every set, a panel each on one scale, so that none hides another."""
-    panels = builds.reach_panels(brief, result)
-    axes, figure = _grid(len(panels), 5.0, 2.7, gap=(1.9, 1.25))
+    panels = build_reach.reach_panels(brief, result)
+    axes, figure = _grid(len(panels), 5.0, 2.7, gap=(_label_room(brief), 1.25))
     for ax, data in zip(axes, panels, strict=True):
         figures.reach_by_rate(ax, data)
-    return Picture("reach-each", figure, " ".join(builds.reach_alt(data) for data in panels))
+    return Picture("reach-each", figure, " ".join(build_reach.reach_alt(data) for data in panels))
 
 
 def gap_picture(brief: Brief, result: SearchResult, best: Candidate) -> Picture:
     """Draw how wide a gap is crossed against frame rate, a panel for each level of the far side."""
-    panels = builds.gap_reaches(brief, result, best)
+    panels = build_reach.gap_reaches(brief, result, best)
     figure = _figure((style.SIZE_WIDE[0], 0.6 + 4.6 * len(panels)))
     tall = figure.get_figheight()
     for row, data in enumerate(panels):
         bottom = (tall - 4.6 * (row + 1) + 0.25) / tall
         figures.reach_by_rate(figure.add_axes((0.08, bottom, 0.72, 3.3 / tall)), data)
-    return Picture("gaps-by-rate", figure, " ".join(builds.reach_alt(data) for data in panels))
+    return Picture("gaps-by-rate", figure, " ".join(build_reach.reach_alt(data) for data in panels))
 
 
 def arc_picture(brief: Brief, result: SearchResult) -> Picture:
     """Draw the arcs of each set over the scene, a panel each on one scale."""
-    panels = builds.arc_panels(brief, result)
+    panels = build_arcs.arc_panels(brief, result)
     wide = panels[0].x_range[1] - panels[0].x_range[0]
     tall = panels[0].y_range[1] - panels[0].y_range[0]
     width = 7.4 if len(panels) == 1 else 5.0
     by_distance = panels[0].scene.by_distance
     height = min(max(width * tall / wide, 1.6), 5.2) if by_distance else 0.5 * width
     width = min(width, height * wide / tall) if by_distance else width
-    axes, figure = _grid(len(panels), width, height, gap=(2.3, 1.3))
+    axes, figure = _grid(len(panels), width, height, gap=(_label_room(brief), 1.3))
     for ax, data in zip(axes, panels, strict=True):
         arcs(ax, data)
-    return Picture("arcs", figure, builds.arc_alt(brief, panels))
+    return Picture("arcs", figure, build_arcs.arc_alt(brief, panels))
 
 
 def sensitivity_picture(brief: Brief, best: Candidate) -> Iterator[Picture]:
     """Draw what one increment of each constant does to the best; nothing where nothing may move."""
-    data = builds.sensitivity(brief, best)
+    data = build_sensitivity.sensitivity(brief, best)
     if data is None:
         return
     count, rows = len(data.columns), len(data.labels)
     axes, figure = _grid(count, 2.15, 0.55 + 0.3 * rows, gap=(0.35, 0.0), columns=count)
     for index, (ax, (name, bars)) in enumerate(zip(axes, data.columns, strict=True)):
         figures.sensitivity(ax, name, bars, data.limit, row_labels=index == 0)
-    figure.text(
-        axes[0].get_position().x0,
-        axes[0].get_position().y1 + 0.42 / figure.get_figheight(),
-        data.title + "\n",
-        fontsize=style.FONT_TITLE,
-        fontweight="bold",
-        va="bottom",
-        linespacing=0.6,
-    )
-    figure.text(
-        axes[0].get_position().x0,
-        axes[0].get_position().y1 + 0.4 / figure.get_figheight(),
-        data.subtitle,
-        fontsize=style.FONT_SMALL,
-        color=style.QUIET,
-        va="bottom",
-    )
+    figures.banner(axes[0], data.title, data.subtitle)
     yield Picture("sensitivity", figure, data.alt)
+
+
+def _label_room(brief: Brief) -> float:
+    """Return the inches between two panels: the names of ledges and gaps, and the next panel's axis."""
+    names = [len(style.shorten(feature.name)) for feature in (*brief.ledges, *brief.gaps)]
+    return 1.1 + 0.078 * max([18, *names])
 
 
 def _grid(
@@ -177,25 +177,24 @@ def _grid(
     return axes, figure
 
 
-def png_bytes(picture: Picture) -> bytes:
+def png_bytes(picture: Picture, box: Bbox) -> bytes:
     """Return a picture as PNG at twice the usual resolution; its text alternative stands in the metadata."""
     buffer = io.BytesIO()
     picture.figure.savefig(
         buffer,
         format="png",
         dpi=style.DPI,
-        bbox_inches="tight",
-        pad_inches=0.2,
+        bbox_inches=box,
         metadata={"Software": None, "Title": picture.name, "Description": picture.alt},
     )
     return buffer.getvalue()
 
 
-def svg_bytes(picture: Picture) -> bytes:
+def svg_bytes(picture: Picture, box: Bbox) -> bytes:
     """Return a picture as SVG with <title> and <desc>, without a date and with fixed ids."""
     buffer = io.BytesIO()
     metadata = {"Date": None, "Creator": "leapwright"}
-    picture.figure.savefig(buffer, format="svg", bbox_inches="tight", pad_inches=0.2, metadata=metadata)
+    picture.figure.savefig(buffer, format="svg", bbox_inches=box, metadata=metadata)
     text = buffer.getvalue().decode()
     words = f"<title>{escape(picture.name)}</title>\n <desc>{escape(picture.alt)}</desc>"
     text, found = re.subn(r"(<svg [^>]*)>", lambda m: f'{m[1]} role="img">\n {words}', text, count=1)
@@ -203,5 +202,3 @@ def svg_bytes(picture: Picture) -> bytes:
         raise RuntimeError("the SVG writer produced no <svg> element")
     return text.encode()
 
-
-__all__: Sequence[str] = ("Picture", "ReachPicture", "ArcPicture", "draw_all", "make_pictures")

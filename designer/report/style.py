@@ -26,12 +26,16 @@ SOLID = "#3d3d45"
 BREACH = "#f2b632"
 """Where a demand is broken; always with hatching as the second cue."""
 BREACH_TEXT = "#7a4f00"
+OUTSIDE = "#f6f6f8"
+"""Rates beyond the supported ones."""
 GOOD = "#eef3ee"
 """The region where everything is within tolerance."""
 
 LEDGE_DASH = {"reach": (0, (1, 0)), "cross": (0, (1, 0)), "stay-out": (0, (6, 2.5))}
 """Must-make features are solid lines, stay-out features dashed ones."""
 
+PALE = 0.35
+"""Opacity of what is shown but does not count."""
 HATCH = "//////"
 
 SIZE_WIDE = (9.6, 5.4)
@@ -42,10 +46,15 @@ DPI = 200
 FONT = 10.5
 FONT_SMALL = 9.0
 FONT_TITLE = 13.0
+FONT_PANEL = 11.0
 LABEL_WIDTH = 30
 """Characters after which a name is cut in a picture."""
-TITLE_WIDTH = 84
+TITLE_WIDTH = 76
 """Characters after which a title breaks."""
+FOOT_WIDTH = 124
+"""Characters after which a remark under a picture breaks."""
+TITLE_WIDTH_SMALL = 52
+"""The same over one panel among several."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -123,3 +132,7 @@ def shorten(name: str, width: int = LABEL_WIDTH) -> str:
     """Return a name that fits a label, cut with an ellipsis where it is longer."""
     clean = " ".join(name.split())
     return clean if len(clean) <= width else clean[: width - 1].rstrip() + "…"
+
+
+TERMINAL = {"off": "bold red", "quiet": "dim", "head": "bold", "best": "bold cyan"}
+"""Styles of text on a terminal; never the only cue: what is off also has a "!"."""

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from designer.objective.score import Scores, nine_digits
+from designer.objective.score import Scores
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -25,6 +25,8 @@ NEARLY_AS_GOOD = 1.5
 """A design off target counts as nearly as good as the best up to so many times its cost."""
 ON_TARGET_SLACK = 1.0
 """A design on target counts as nearly as good up to so many tolerances more in cost."""
+NOISE = 1e-10
+"""A miss, spread or cost below this many tolerances is what floats leave of nothing."""
 CELL = 1.025
 """Designs whose constants all lie within this factor share a cell of the pool, which keeps the cheapest."""
 
@@ -60,8 +62,8 @@ class Rows:
 
     @property
     def on_target(self) -> Mask:
-        """Whether it is feasible and no deviation is beyond its tolerance."""
-        return np.asarray(self.feasible & (nine_digits(self.worst) <= 1.0))
+        """Whether it is feasible and no deviation is beyond its tolerance, to nine significant digits."""
+        return np.asarray(self.feasible & (self.worst <= 1.0 + 5e-9))
 
     @property
     def rank(self) -> Floats:
@@ -79,16 +81,22 @@ def join(parts: Sequence[Rows]) -> Rows:
     return Rows(*(np.concatenate([getattr(p, f.name) for p in parts]) for f in fields(Rows)))
 
 
+_NONE = np.zeros(0)
 NO_ROWS = Rows(
-    np.zeros(0, np.int64), *(np.zeros(0) for _ in range(5)), np.zeros(0, bool), np.zeros(0, np.int64)
+    _NONE.astype(np.int64), _NONE, _NONE, _NONE, _NONE, _NONE, _NONE.astype(bool), _NONE.astype(np.int64)
 )
 
 
 def rows_of(scores: Scores, index: Ints, numbers: Mask, cell: Ints) -> Rows:
-    """Return scored designs as rows."""
-    return Rows(
-        index, scores.miss, scores.rate_spread, scores.cost, scores.violation, scores.worst, numbers, cell
+    """Return scored designs as rows; miss, spread and cost that are but float noise become 0.
+
+    Nine significant digits do not see that 7e-15 is a spread of nothing, yet a front of such pairs would be
+    one of noise.
+    """
+    miss, spread, cost = (
+        np.where(values < NOISE, 0.0, values) for values in (scores.miss, scores.rate_spread, scores.cost)
     )
+    return Rows(index, miss, spread, cost, scores.violation, scores.worst, numbers, cell)
 
 
 def cells(*constants: Floats) -> Ints:
@@ -110,7 +118,7 @@ class Leaders:
     infeasible: Rows = NO_ROWS
     """The two best infeasible ones that land, by cost + violation."""
     front: Rows = NO_ROWS
-    """Not dominated in (miss, rate spread), by miss; where nothing is feasible, in (miss + violation, spread)."""
+    """Not dominated in (miss, rate spread), by miss; (miss + violation, spread) where nothing is feasible."""
     steady: Rows = NO_ROWS
     """The lowest rate spread among those on target."""
     numbers: Rows = NO_ROWS

@@ -7,8 +7,9 @@ the designs are put together from that.
 
 from __future__ import annotations
 
+import math
 from collections import deque
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, TypeVar
@@ -22,6 +23,7 @@ from designer.motion.rule import SEARCHABLE
 from designer.motion.simulate import PLAIN_STEPS
 from designer.objective.score import Scores, score
 from designer.objective.table import Designs, JumpTable, extremes, kinematics, scalars
+from designer.search.conflict import failing_patterns, least_sums
 from designer.search.progress import Progress, Silent
 from designer.search.ranking import NO_ROWS, Leaders, Rows, absorb, cells, contenders, join, rows_of
 from designer.search.result import Certificate, RunnerUp
@@ -102,6 +104,8 @@ class Batch:
     designs: Designs
     tables: tuple[JumpTable, ...]
     scores: Scores
+    cell: Ints
+    """Designs with the same cell look alike to a designer."""
 
 
 def batches(brief: Brief, layout: Plan, start: int, compiled: bool | None = None) -> Iterator[Batch]:
@@ -115,13 +119,14 @@ def batches(brief: Brief, layout: Plan, start: int, compiled: bool | None = None
     flown = Designs(**chosen)
     kin = kinematics(brief, flown.launches(layout.steps), compiled=compiled)
     steps, runs = values(space.axis("step")), values(space.axis("run_speed"))
-    for i, nominal in enumerate(layout.nominals):
-        for j, run in enumerate(runs):
+    for j, run in enumerate(runs):
+        cell = cells_of(replace(flown, run_speed=np.full(count, run)))
+        for i, nominal in enumerate(layout.nominals):
             designs = replace(flown, step=np.full(count, steps[i]), run_speed=np.full(count, run))
             place = at | {"step": still + i, "run_speed": still + j}
             index = np.ravel_multi_index([place[name] for name in SEARCHABLE], space.shape)
             tables = extremes(brief, kin, nominal, layout.supported, scalars(brief, designs))
-            yield Batch(index.astype(np.int64), designs, tables, score(brief, tables))
+            yield Batch(index.astype(np.int64), designs, tables, score(brief, tables), cell)
 
 
 def only_numbers(brief: Brief, designs: Designs) -> NDArray[np.bool_]:
@@ -129,16 +134,15 @@ def only_numbers(brief: Brief, designs: Designs) -> NDArray[np.bool_]:
     today = brief.today
     if today is None:
         return np.zeros(len(designs.grain), dtype=bool)
-    same = designs.grain == today.grain
+    same = np.asarray(designs.grain == today.grain)
     return same if brief.loop is Loop.EACH_FRAME else same & (designs.step == today.step)
 
 
-def as_rows(brief: Brief, index: Ints, designs: Designs, scores: Scores) -> Rows:
-    """Return scored designs as rows for the ranking."""
-    alike = cells(
+def cells_of(designs: Designs) -> Ints:
+    """Return the cells in which designs lie, by what moves their measures most."""
+    return cells(
         designs.gravity, designs.launch_speed, designs.run_speed, designs.fall_factor, designs.terminal_speed
     )
-    return rows_of(scores, index, only_numbers(brief, designs), alike)
 
 
 def in_order(
@@ -175,6 +179,8 @@ class Scan:
     leaders: Leaders
     evaluated: int
     certificate: Certificate
+    failing: frozenset[int]
+    """Which features fail together, as bits, in designs that land; told only where nothing is feasible."""
 
 
 def scan(brief: Brief, space: Space, *, workers: int = 1, progress: Progress | None = None) -> Scan:
@@ -184,19 +190,53 @@ def scan(brief: Brief, space: Space, *, workers: int = 1, progress: Progress | N
     # Block by block the work looks small; what counts is the whole.
     compiled = True if steps_to_simulate(brief, layout) > PLAIN_STEPS else None
 
-    def work(start: int) -> tuple[int, Rows]:
+    def work(start: int) -> tuple[int, Rows, set[int]]:
         so_far, kept, count = leaders, [NO_ROWS], 0
+        patterns: set[int] = set()
         for batch in batches(brief, layout, start, compiled):
-            rows = as_rows(brief, batch.index, batch.designs, batch.scores)
+            rows = rows_of(batch.scores, batch.index, only_numbers(brief, batch.designs), batch.cell)
             kept.append(contenders(so_far, rows))
             count += len(rows)
-        return count, join(kept)
+            if not len(so_far.feasible):
+                patterns |= failing_patterns(batch.scores)
+        return count, join(kept), patterns
 
     evaluated = 0
-    for count, rows in in_order(work, layout.block_starts(), workers, progress or Silent(), "scan"):
+    failing: set[int] = set()
+    for count, rows, patterns in in_order(work, layout.block_starts(), workers, progress or Silent(), "scan"):
         leaders = absorb(leaders, rows)
         evaluated += count
-    return Scan(leaders, evaluated, _certificate(brief, space, leaders, evaluated))
+        failing |= patterns
+    return Scan(
+        leaders,
+        evaluated,
+        _certificate(brief, space, leaders, evaluated),
+        frozenset() if len(leaders.feasible) else frozenset(failing),
+    )
+
+
+def least_shortfalls(
+    brief: Brief,
+    space: Space,
+    sets: Sequence[Sequence[int]],
+    *,
+    workers: int = 1,
+    progress: Progress | None = None,
+) -> list[float]:
+    """Return for each set of features the least sum of shortfalls that any design reaches, length."""
+    layout = plan(brief, space)
+    compiled = True if steps_to_simulate(brief, layout) > PLAIN_STEPS else None
+
+    def work(start: int) -> list[float]:
+        found = [
+            least_sums(batch.scores.shortfalls, sets) for batch in batches(brief, layout, start, compiled)
+        ]
+        return [min(column) for column in zip(*found, strict=True)]
+
+    least = [math.inf] * len(sets)
+    for found in in_order(work, layout.block_starts(), workers, progress or Silent(), "conflicts"):
+        least = [min(pair) for pair in zip(least, found, strict=True)]
+    return least
 
 
 def _certificate(brief: Brief, space: Space, leaders: Leaders, evaluated: int) -> Certificate:

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 from typing import Any
 
 import numpy as np
 
-from designer.brief.model import Brief, JumpBrief, Loop, Rate, Rates, Target
+from designer.brief.model import Brief, Choice, JumpBrief, Loop, Rate, Rates, Target
 from designer.motion.rule import Constants, Rule
 from designer.objective.table import Extremes, JumpTable
 
@@ -41,3 +42,23 @@ def table_of(
     }
     count = len(next(iter(found.values())).nominal)
     return JumpTable("jump", np.array(lands if lands is not None else [True] * count), found)
+
+
+def small_brief() -> Brief:
+    """Return a brief whose grid has 272 designs."""
+    today = Constants(gravity=1600.0, launch_speed=620.0, run_speed=540.0)
+    search = {
+        "gravity": Choice(tuple(float(g) for g in range(1400, 1701, 20)), text="1400 to 1700 by 20"),
+        "launch_speed": Choice(tuple(float(v) for v in range(580, 661, 5)), text="580 to 660 by 5"),
+        "grain": Choice((0.0,)),
+        "run_speed": Choice((540.0,)),
+        "fall_factor": Choice((1.0,)),
+        "terminal_speed": Choice((math.inf,)),
+    }
+    return brief_of(
+        Target("apex", within=2.0, aim=120.0),
+        Target("airtime", within=0.02, aim=0.76),
+        today=today,
+        base=today,
+        search=search,
+    )

@@ -64,7 +64,7 @@ def snap(x: float, q: float, mode: str) -> float:
     return whole * q
 
 
-def jump(  # noqa: PLR0913
+def jump(
     rule: TwinRule,
     gravity: float,
     launch_speed: float,

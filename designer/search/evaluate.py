@@ -1,0 +1,136 @@
+"""Scoring scattered designs, and a record of all that were scored."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, fields
+from decimal import Decimal
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from designer.brief.model import Brief
+from designer.motion.rule import SEARCHABLE
+from designer.motion.simulate import PLAIN_STEPS
+from designer.objective.modules import ObjectiveModule
+from designer.objective.score import Scores, score
+from designer.objective.table import Designs, design_tables
+from designer.search.space import Axis, Space
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    Floats = NDArray[np.float64]
+
+INFEASIBLE = 1e6
+"""What `penalised` adds to designs that land but break a ledge or gap."""
+DIGITS = 4
+"""Constants without increments take values of at most so many significant figures."""
+
+
+def significant(value: float, digits: int) -> float:
+    """Return a value with at most so many significant figures, the double nearest to that decimal."""
+    return float(f"{value:.{digits - 1}e}")
+
+
+def figures(value: float) -> int:
+    """Return how many significant figures a value is written with: 1500 → 2, 0.85 → 2."""
+    return max(1, len(Decimal(repr(float(value))).normalize().as_tuple().digits))
+
+
+def designs_of(matrix: Floats) -> Designs:
+    """Return the designs whose constants are the columns of a matrix (designs, 7), in SEARCHABLE's order."""
+    return Designs(*np.ascontiguousarray(np.asarray(matrix, dtype=np.float64).T))
+
+
+def matrix_of(designs: Designs) -> Floats:
+    """Return the constants of designs as a matrix (designs, 7), in SEARCHABLE's order."""
+    return np.column_stack([getattr(designs, name) for name in SEARCHABLE])
+
+
+@dataclass
+class Evaluator:
+    """Scores designs of a space and remembers each."""
+
+    brief: Brief
+    space: Space
+    objectives: Sequence[ObjectiveModule] = ()
+    workers: int = 1
+    expected: int = 600
+    """About how many designs will be scored in all; decides whether compiling the kernel pays."""
+    _places: dict[bytes, int] = field(default_factory=dict)
+    """Where in `_all` each design stands."""
+    _all: Scores | None = None
+
+    @property
+    def count(self) -> int:
+        """How many distinct designs were scored."""
+        return len(self._places)
+
+    def tidy(self, matrix: Floats) -> Floats:
+        """Return designs put onto the space: grid constants on points, others to four figures in bounds."""
+
+        def on(axis: Axis, column: Floats) -> list[float]:
+            if axis.points is None:
+                return [axis.clip(significant(value, DIGITS)) for value in column]
+            return [axis.clip(value) for value in column]
+
+        return np.column_stack(
+            [on(axis, column) for axis, column in zip(self.space.axes, np.asarray(matrix).T, strict=True)]
+        )
+
+    def __call__(self, matrix: Floats) -> Scores:
+        """Score designs, a matrix (designs, 7) that already lies on the space; each is measured only once."""
+        rows = np.ascontiguousarray(matrix, dtype=np.float64)
+        keys = [row.tobytes() for row in rows]
+        fresh: dict[bytes, int] = {}
+        for at, key in enumerate(keys):
+            if key not in self._places:
+                fresh.setdefault(key, at)
+        if fresh:
+            found = self._measure(designs_of(rows[list(fresh.values())]))
+            self._places |= {key: len(self._places) + k for k, key in enumerate(fresh)}
+            self._all = found if self._all is None else _join(self._all, found)
+        if self._all is None:
+            raise ValueError("no designs to score")
+        return pick(self._all, np.array([self._places[key] for key in keys]))
+
+    def _measure(self, designs: Designs) -> Scores:
+        tables = design_tables(self.brief, designs, workers=self.workers, compiled=self._compiled(designs))
+        terms: dict[str, Floats] = {}
+        for module in self.objectives:
+            terms |= module.terms(designs, tables)
+        return score(self.brief, tables, terms or None)
+
+    def _compiled(self, designs: Designs) -> bool | None:
+        """Batches look small one by one; compile where the whole is not."""
+        flight = 2.0 * np.mean(designs.launch_speed / designs.gravity)
+        steps = sum(flight / rate.step for rate in self.brief.rates.supported)
+        return True if self.expected * steps > PLAIN_STEPS else None
+
+    def everything(self) -> tuple[Floats, Scores]:
+        """Return all designs, ascending in the order that decides between equals, with scores."""
+        if self._all is None:
+            raise ValueError("nothing was scored yet")
+        matrix = np.array([np.frombuffer(key) for key in self._places])
+        order = np.lexsort(np.nan_to_num(matrix, nan=0.0, posinf=np.inf).T[::-1])
+        return matrix[order], pick(self._all, order)
+
+
+def pick(scores: Scores, which: NDArray[np.int64] | NDArray[np.bool_]) -> Scores:
+    """Return the scores of some designs."""
+    return Scores(*(getattr(scores, part.name)[which] for part in fields(Scores)))
+
+
+def _join(first: Scores, second: Scores) -> Scores:
+    return Scores(
+        *(np.concatenate([getattr(first, f.name), getattr(second, f.name)]) for f in fields(Scores))
+    )
+
+
+def penalised(scores: Scores) -> Floats:
+    """Return one finite number a design that sorts like DESIGN §5: feasible ones first, by cost."""
+    landed = np.isfinite(scores.violation)
+    rank = np.where(landed, np.nan_to_num(scores.cost) + np.where(landed, scores.violation, 0.0), 0.0)
+    far = np.where(scores.feasible, 0.0, np.where(landed, INFEASIBLE, 1e12))
+    return np.asarray(np.minimum(rank, np.where(scores.feasible, 0.99e6, 1e9)) + far)

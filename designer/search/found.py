@@ -1,0 +1,109 @@
+"""What either route of a search hands on: the designs worth remembering, and how they were found."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from designer.brief.model import Brief
+from designer.objective.modules import ObjectiveModule
+from designer.objective.table import Designs
+from designer.search.conflict import failing_patterns, find_clashes, least_sums
+from designer.search.evaluate import Evaluator, designs_of, pick
+from designer.search.progress import Progress
+from designer.search.ranking import Leaders, absorb, rows_of
+from designer.search.refine import GENERATIONS, POPULATION, STARTS, refine
+from designer.search.result import Certificate, Clash
+from designer.search.scan import cells_of, least_shortfalls, only_numbers, scan
+from designer.search.space import Space
+from designer.search.study import run_study
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+
+@dataclass(frozen=True, slots=True)
+class Found:
+    """Designs worth remembering."""
+
+    leaders: Leaders
+    designs: Callable[[NDArray[np.int64]], Designs]
+    """From the numbers in `leaders` to constants."""
+    evaluations: int
+    certificate: Certificate | None
+    clashes: tuple[Clash, ...]
+    method: str
+    """ "scan" or "study"."""
+    notes: tuple[str, ...]
+
+    def because(self, reason: str) -> Found:
+        """Return the same with the reason for the study said first."""
+        return replace(self, notes=(f"No scan, since {reason}; so the best is the best found.", *self.notes))
+
+
+def by_scan(brief: Brief, space: Space, *, workers: int, progress: Progress) -> Found:
+    """Scan the grid."""
+    done = scan(brief, space, workers=workers, progress=progress)
+    clashes: tuple[Clash, ...] = ()
+    if not len(done.leaders.feasible):
+
+        def least(sets: Sequence[Sequence[int]]) -> list[float]:
+            return least_shortfalls(brief, space, sets, workers=workers, progress=progress)
+
+        clashes = find_clashes(brief, done.failing, least, proved=True)
+    note = f"Scanned all {done.evaluated:,} designs of the grid: no point of it does better than the best."
+    return Found(done.leaders, space.designs, done.evaluated, done.certificate, clashes, "scan", (note,))
+
+
+def by_study(
+    brief: Brief,
+    space: Space,
+    *,
+    seed: int,
+    trials: int,
+    objectives: Sequence[ObjectiveModule],
+    workers: int,
+    progress: Progress,
+) -> Found:
+    """Let Optuna search and SciPy refine; all designs that they tried are ranked like a scan's."""
+    expected = trials + STARTS * POPULATION * GENERATIONS
+    evaluator = Evaluator(brief, space, objectives, workers, expected)
+    said = run_study(evaluator, seed=seed, trials=trials, progress=progress)
+    chosen, refined = refine(evaluator, seed=seed, progress=progress)
+    matrix, scores = evaluator.everything()
+    tried = pick(scores, np.isfinite(scores.violation))
+    keep = np.ones(len(matrix), dtype=bool)
+    if scores.feasible[chosen] and not space.is_grid:
+        # What is a hair cheaper than the tidy proposal is the same proposal with more figures.
+        keep = ~(scores.feasible & (scores.cost < scores.cost[chosen]))
+    designs = designs_of(matrix[keep])
+    numbers = only_numbers(brief, designs)
+    rows = rows_of(pick(scores, keep), np.flatnonzero(keep), numbers, cells_of(designs))
+    leaders = absorb(Leaders(), rows)
+    if not space.is_grid and len(leaders.feasible):
+        leaders = _lead(leaders, chosen)
+    clashes: tuple[Clash, ...] = ()
+    if not len(leaders.feasible):
+        clashes = find_clashes(
+            brief, failing_patterns(scores), lambda sets: least_sums(tried.shortfalls, sets), proved=False
+        )
+    return Found(
+        leaders,
+        lambda numbers: designs_of(matrix[numbers]),
+        evaluator.count,
+        None,
+        clashes,
+        "study",
+        (said, refined),
+    )
+
+
+def _lead(leaders: Leaders, chosen: int) -> Leaders:
+    """Put the tidy proposal first among designs of exactly its cost."""
+    rows = leaders.feasible
+    if len(rows) == 2 and rows.index[1] == chosen and rows.cost[0] == rows.cost[1]:
+        return replace(leaders, feasible=rows.take(np.array([1, 0])))
+    return leaders

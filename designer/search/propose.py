@@ -1,0 +1,210 @@
+"""From the designs worth remembering to candidates with verdicts and reasons."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from designer.brief.model import Brief, Loop
+from designer.motion.rule import Constants
+from designer.objective.judge import judge
+from designer.objective.modules import ObjectiveModule
+from designer.objective.score import score
+from designer.objective.table import Designs, design_tables
+from designer.objective.verdict import Verdict
+from designer.search.found import Found
+from designer.search.ranking import Leaders, Rows, join
+from designer.search.result import Candidate, SearchResult
+from designer.search.shortlist import FEWEST, LOOKS, NOTICED, Options, Pick, against, choose, trade
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+POOL = 2000
+"""So many of the pool, the cheapest, are compared in what a designer notices."""
+STEADY_WITHIN = 2.0
+"""Where nothing is on target, the steadiest up to so many times the best cost is shown."""
+LUCKY = 1.05
+"""Rounding that saves this share of the cost by chance is mentioned."""
+
+
+def change_of(brief: Brief, constants: Constants) -> str:
+    """Return what a build must change: "none", "numbers" or "code"; "new" where the brief has no today."""
+    today = brief.today
+    if today is None:
+        return "new"
+    if constants == today:
+        return "none"
+    same = constants.grain == today.grain
+    if brief.loop is Loop.FIXED:
+        same = same and constants.step == today.step
+    return "numbers" if same else "code"
+
+
+def steadiest(leaders: Leaders) -> tuple[Rows, str]:
+    """Return the lowest rate spread among designs on target, else within twice the best cost; and which.
+
+    The latter is always on the front: what dominates a design has no more cost and no more spread.
+    """
+    if len(leaders.steady):
+        return leaders.steady, "steadiest over the rates among those on target"
+    front = leaders.front
+    rows = front.take(front.cost <= STEADY_WITHIN * leaders.best_cost)
+    order = np.lexsort((rows.index, rows.cost, rows.spread))
+    return rows.take(order[:1]), f"steadiest over the rates up to {STEADY_WITHIN:g} times the lowest cost"
+
+
+class _Proposals:
+    """Candidates of one search, each judged once."""
+
+    def __init__(self, brief: Brief, found: Found, objectives: Sequence[ObjectiveModule]) -> None:
+        self.brief, self.found, self.objectives = brief, found, objectives
+        self._judged: dict[tuple[Constants, bool], Verdict] = {}
+
+    def verdict(self, constants: Constants, *, bands: bool) -> Verdict:
+        if (constants, True) in self._judged:
+            return self._judged[constants, True]
+        if (constants, bands) not in self._judged:
+            self._judged[constants, bands] = judge(
+                self.brief, constants, bands=bands, objectives=self.objectives
+            )
+        return self._judged[constants, bands]
+
+    def candidate(
+        self, constants: Constants, label: str | None, why: str, *, bands: bool = True
+    ) -> Candidate:
+        return Candidate(label, why, change_of(self.brief, constants), self.verdict(constants, bands=bands))
+
+    def constants(self, rows: Rows, at: int = 0) -> Constants:
+        return self.found.designs(rows.index).constants(at, self.brief)
+
+    def shortlist(self) -> tuple[list[Candidate], list[str]]:
+        """Return the shortlisted candidates, A first, and what to say about the list."""
+        leaders = self.found.leaders
+        steady, steady_why = steadiest(leaders)
+        must = {"lowest cost": leaders.feasible.take(np.array([0])), steady_why: steady}
+        if len(leaders.numbers):
+            must["best that changes numbers only"] = leaders.numbers
+        pool = leaders.pool.take(np.lexsort((leaders.pool.index, leaders.pool.cost))[:POOL])
+        rows = join([*must.values(), leaders.front, pool])
+        _, first = np.unique(rows.index, return_index=True)
+        rows = rows.take(first)  # ascending in index from here on
+        designs = self.found.designs(rows.index)
+        options = Options(self._looks(designs), rows.miss, rows.spread, rows.cost)
+
+        def places(part: Rows) -> NDArray[np.int64]:
+            return np.asarray(np.searchsorted(rows.index, part.index), dtype=np.int64)
+
+        always = {why: int(places(part)[0]) for why, part in must.items()}
+        picks = choose(options, list(always.values()), places(leaders.front), places(pool))
+        listed = []
+        for letter, pick in zip("ABCDEF", picks, strict=False):
+            reasons = [why for why, at in always.items() if at == pick.option]
+            why = self._why(options, pick, picks[0].option, reasons, designs)
+            constants = designs.constants(pick.option, self.brief)
+            listed.append(self._with_ties(self.candidate(constants, letter, why)))
+        return listed, self._remarks(len(listed), bool(len(leaders.numbers)))
+
+    def _looks(self, designs: Designs) -> NDArray[np.float64]:
+        """Return what a designer notices of each design, (designs, 6); measures of the first jump."""
+        table = design_tables(self.brief, designs)[0]
+        columns = [
+            table.measures[name].nominal if name in table.measures else getattr(designs, name)
+            for name in LOOKS
+        ]
+        return np.asarray(np.nan_to_num(np.column_stack(columns)), dtype=np.float64)
+
+    def _why(self, options: Options, pick: Pick, best: int, reasons: Sequence[str], designs: Designs) -> str:
+        one = pick.option
+        parts = list(reasons)
+        if pick.reason == "front":
+            parts.append(trade(options, one, best))
+        elif pick.reason == "different":
+            parts.append("different and nearly as good")
+        why = " and ".join(parts)
+        if one != best:
+            why += f": {against(options, one, best)}"
+        return why + self._luck(designs, one, float(options.cost[one]))
+
+    def _luck(self, designs: Designs, one: int, cost: float) -> str:
+        """Say where rounding cancels an error by chance: the same constants cost more without it."""
+        if not designs.grain[one] or self.objectives:
+            return ""
+        bare = Designs.of([replace(designs.constants(one, self.brief), grain=0.0)])
+        without = float(score(self.brief, design_tables(self.brief, bare)).cost[0])
+        if not without > LUCKY * cost:
+            return ""
+        return f"; by luck of rounding: with grain 0 the same numbers cost {without:.3g}, not {cost:.3g}"
+
+    def _with_ties(self, candidate: Candidate) -> Candidate:
+        ties = [flag for flag in candidate.verdict.flags if flag.startswith("tie")]
+        if not ties:
+            return candidate
+        return replace(candidate, why=f"{candidate.why}; careful: {', '.join(ties)}")
+
+    def _remarks(self, count: int, has_numbers: bool) -> list[str]:
+        said = []
+        if count < FEWEST:
+            noun = "candidate" if count == 1 else "candidates"
+            said.append(
+                f"Only {count} {noun}: nothing else that is nearly as good differs by more than "
+                f"{NOTICED:.0%} in {', '.join(LOOKS[:-1])} or {LOOKS[-1]}."
+            )
+        if self.brief.today is not None and not has_numbers:
+            said.append(
+                "Nothing that this search may use keeps today's step and grain and every ledge and gap, so "
+                "no candidate changes numbers only."
+            )
+        return said
+
+
+def propose(
+    brief: Brief,
+    found: Found,
+    *,
+    seed: int,
+    objectives: Sequence[ObjectiveModule] = (),
+    notes: Sequence[str] = (),
+) -> SearchResult:
+    """Judge what a search found, today and the named sets, and give the reasons."""
+    make = _Proposals(brief, found, objectives)
+    leaders = found.leaders
+    shortlist: list[Candidate] = []
+    remarks: list[str] = []
+    best = nearest = None
+    if len(leaders.feasible):
+        shortlist, remarks = make.shortlist()
+        best = shortlist[0]
+    elif len(leaders.infeasible):
+        rows = leaders.infeasible
+        why = f"nothing fulfils every demand; nearest to all of them: {_short(rows)}"
+        nearest = make.candidate(make.constants(rows), None, why)
+    named = {candidate.verdict.constants: candidate for candidate in shortlist}
+    front = []
+    for k in range(len(leaders.front)):
+        constants = make.constants(leaders.front, k)
+        why = "not dominated in miss and rate spread"
+        front.append(named.get(constants) or make.candidate(constants, None, why, bands=False))
+    today = None if brief.today is None else make.candidate(brief.today, None, "what the build has now")
+    sets = tuple(make.candidate(one.constants, one.name, "brought along in [[sets]]") for one in brief.sets)
+    return SearchResult(
+        best=best,
+        nearest=nearest,
+        today=today,
+        sets=sets,
+        shortlist=tuple(shortlist),
+        front=tuple(front),
+        certificate=found.certificate,
+        evaluations=found.evaluations,
+        seed=seed,
+        method=found.method,
+        notes=(*notes, *found.notes, *remarks),
+        clashes=found.clashes,
+    )
+
+
+def _short(rows: Rows) -> str:
+    return f"cost {rows.cost[0]:.3g}, short by {rows.violation[0]:.3g} tolerances"

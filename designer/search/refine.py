@@ -1,0 +1,179 @@
+"""The last step of a study: down to the bottom of the cell, then back onto numbers that people can say."""
+
+from __future__ import annotations
+
+from itertools import product
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from designer.motion.rule import SEARCHABLE
+from designer.search.evaluate import DIGITS, INFEASIBLE, Evaluator, figures, penalised, significant
+from designer.search.progress import Progress, Silent
+from designer.search.space import Axis
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    Floats = NDArray[np.float64]
+
+STARTS = 3
+"""How many of the best are refined."""
+POPULATION = 32
+GENERATIONS = 30
+BOX = 0.08
+"""Half the width of the box in which a start is refined, as a share of each axis."""
+PRICE = 0.01
+"""Tidier numbers may cost this share more."""
+MOST_COMBINATIONS = 4096
+
+
+def best_rows(matrix: Floats, ranks: Floats, count: int) -> list[int]:
+    """Return the best few designs that differ by more than a box in some constant, best first."""
+    chosen: list[int] = []
+    for k in np.argsort(ranks, kind="stable"):
+        if len(chosen) == count:
+            break
+        with np.errstate(invalid="ignore", divide="ignore"):
+            apart = [np.nanmax(np.abs(matrix[k] / matrix[j] - 1.0)) > BOX for j in chosen]
+        if all(apart):
+            chosen.append(int(k))
+    return chosen
+
+
+def _box(axis: Axis, value: float) -> tuple[float, float]:
+    """Return between what an axis' parameter (index of a point, or value) may move around a start."""
+    if axis.points is not None:
+        at, around = axis.points.index(value), max(1, round(BOX * len(axis.points)))
+        return float(max(0, at - around)), float(min(len(axis.points) - 1, at + around))
+    reach = BOX * (axis.high - axis.low)
+    return max(axis.low, value - reach), min(axis.high, value + reach)
+
+
+def _local(evaluator: Evaluator, start: Floats, rng: np.random.Generator) -> None:
+    """Search the box around one design by differential evolution, without derivatives."""
+    from scipy.optimize import differential_evolution
+
+    axes = evaluator.space.axes
+    boxes = [None if axis.is_fixed else _box(axis, value) for axis, value in zip(axes, start, strict=True)]
+    moving = [k for k, box in enumerate(boxes) if box is not None and box[0] < box[1]]
+    if not moving:
+        return
+
+    def designs(parameters: Floats) -> Floats:
+        rows = np.repeat(start[None, :], parameters.shape[1], axis=0)
+        for k, column in zip(moving, parameters, strict=True):
+            points = axes[k].points
+            rows[:, k] = column if points is None else np.array(points)[np.rint(column).astype(int)]
+        return evaluator.tidy(rows)
+
+    def cost(parameters: Floats) -> Any:
+        return penalised(evaluator(designs(parameters)))
+
+    bounds = [boxes[k] for k in moving]
+    begin = [start[k] if (p := axes[k].points) is None else p.index(start[k]) for k in moving]
+    differential_evolution(
+        cost,
+        bounds,
+        x0=np.clip(begin, [b[0] for b in bounds if b], [b[1] for b in bounds if b]),
+        rng=rng,
+        integrality=[axes[k].points is not None for k in moving],
+        popsize=max(1, POPULATION // len(moving)),
+        maxiter=GENERATIONS,
+        vectorized=True,
+        updating="deferred",
+        polish=False,
+        tol=0.0,
+    )
+
+
+def _tidier(axis: Axis, value: float) -> list[float]:
+    """Return the value and its neighbours with fewer figures, inside the bounds."""
+    found = {value}
+    for digits in range(1, DIGITS):
+        near = significant(value, digits)
+        unit = 10.0 ** (np.floor(np.log10(abs(value))) - digits + 1) if value else 0.0
+        found |= {significant(near + side * unit, digits) for side in (-1.0, 0.0, 1.0)}
+    return sorted(v for v in found if axis.low <= v <= axis.high)
+
+
+def _try_tidier(evaluator: Evaluator, row: Floats) -> None:
+    """Score a design's tidier neighbours in the constants without increments."""
+    axes = evaluator.space.axes
+    choices = [
+        _tidier(axis, value) if axis.points is None else [value]
+        for axis, value in zip(axes, row, strict=True)
+    ]
+    total = int(np.prod([len(choice) for choice in choices]))
+    if total <= MOST_COMBINATIONS:
+        evaluator(np.array(list(product(*choices))))
+        return
+    for k, choice in enumerate(choices):  # too many together: one constant at a time
+        rows = np.repeat(row[None, :], len(choice), axis=0)
+        rows[:, k] = choice
+        ranks = penalised(evaluator(rows))
+        dear = ~_nearly(ranks)
+        row = rows[min(range(len(choice)), key=lambda i: (dear[i], figures(choice[i]), ranks[i]))]
+
+
+def _nearly(ranks: Floats) -> NDArray[np.bool_]:
+    """Return which designs cost at most PRICE more than the best; where none is feasible, only the best."""
+    best = float(np.min(ranks))
+    return np.asarray(ranks <= (best * (1.0 + PRICE) + 1e-9 if best < INFEASIBLE else best))
+
+
+def figures_of(evaluator: Evaluator, matrix: Floats) -> NDArray[np.int64]:
+    """Return how many figures the constants without increments take in all, (designs,)."""
+    free = [k for k, axis in enumerate(evaluator.space.axes) if axis.points is None]
+    return np.array([sum(figures(row[k]) for k in free) for row in matrix], dtype=np.int64)
+
+
+def tidiest(evaluator: Evaluator, matrix: Floats, ranks: Floats) -> int:
+    """Return the design with the fewest figures among those that cost at most PRICE more than the best."""
+    near = np.flatnonzero(_nearly(ranks))
+    order = np.lexsort((near, ranks[near], figures_of(evaluator, matrix[near])))
+    return int(near[order[0]])
+
+
+def _say(row: Floats) -> str:
+    return ", ".join(f"{name} {v:.6g}" for name, v in zip(SEARCHABLE, row, strict=True) if np.isfinite(v))
+
+
+def refine(evaluator: Evaluator, *, seed: int, progress: Progress | None = None) -> tuple[int, str]:
+    """Refine the best few designs that an evaluator remembers, and put them back onto tidy numbers.
+
+    Returns the number of the proposed design in `evaluator.everything()` and what was done in words. Each
+    start has a random stream of its own, so nothing depends on the order or the pace of the work.
+    """
+    progress = progress or Silent()
+    matrix, scores = evaluator.everything()
+    before, ranks = len(matrix), penalised(scores)
+    found_before = float(np.min(ranks))
+    starts = matrix[best_rows(matrix, ranks, STARTS)]
+    streams = np.random.SeedSequence([seed, 1]).spawn(len(starts))
+    for k, (start, stream) in enumerate(zip(starts, streams, strict=True)):
+        _local(evaluator, start, np.random.default_rng(stream))
+        progress.update("refine", k + 1, len(starts))
+    matrix, scores = evaluator.everything()
+    ranks = penalised(scores)
+    refined = float(np.min(ranks))
+    if not evaluator.space.is_grid:
+        for k in best_rows(matrix, ranks, STARTS):
+            _try_tidier(evaluator, matrix[k])
+        matrix, scores = evaluator.everything()
+        ranks = penalised(scores)
+    chosen = tidiest(evaluator, matrix, ranks)
+    text = f"SciPy refined the best {len(starts)} with {len(matrix) - before} more designs"
+    text += (
+        ", to no better cost"
+        if refined >= found_before
+        else f": cost {found_before:.4g} became {refined:.4g}"
+    )
+    if scores.feasible[chosen] and not evaluator.space.is_grid:
+        best = int(np.argmin(ranks))
+        text += (
+            f"; tidied to {_say(matrix[chosen])} at cost {ranks[chosen]:.4g}"
+            if chosen != best
+            else "; no tidier numbers come within one percent of the best"
+        )
+    return chosen, text + "."
