@@ -81,11 +81,12 @@ def test_check_prints_the_normative_document(capsys: pytest.CaptureFixture[str])
 
 
 def test_check_takes_settings(capsys: pytest.CaptureFixture[str]) -> None:
-    main(["check", str(COURIER), "--set", "gravity=1580", "--set", "launch_speed = 625", "--json"])
+    settings = ("gravity=1580", "launch_speed = 625", "grain=0.125")
+    main(["check", str(COURIER), *(word for one in settings for word in ("--set", one)), "--json"])
     document = json.loads(capsys.readouterr().out)
     assert document["constants"]["gravity"] == 1580.0
     apexes = [row["apex"] for row in document["jumps"][0]["rates"] if row["supported"]]
-    # The design's known case: 1580, 625 lies within 118.8 to 121.5.
+    # The design's known case: 1580, 625 at grain 1/8 lies within 118.8 to 121.5.
     assert min(apexes) == pytest.approx(118.8, abs=0.05)
     assert max(apexes) == pytest.approx(121.5, abs=0.05)
 

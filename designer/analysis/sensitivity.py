@@ -79,7 +79,7 @@ def one_increment(brief: Brief, constants: Constants, base: Verdict | None = Non
     for name in SEARCHABLE:
         for direction, before, after, share in _neighbours(brief, constants, name):
             value = None if np.isinf(after) else after
-            moved = replace(constants, **{name: value})
+            moved = replace(constants, **{name: value})  # type: ignore[arg-type]
             verdict = judge(brief, moved, bands=False)
             nudges.append(
                 Nudge(
@@ -172,10 +172,12 @@ def _effective(brief: Brief, constants: Constants, step: float) -> tuple[float, 
     """Return the effective gravity of rising and of falling, length/s²; empty where nothing is rounded."""
     if constants.grain == 0.0 or brief.rule.rounding.carry:
         return ()
-    pulls = (constants.gravity, constants.gravity * constants.fall_factor)
-    return tuple(
-        round(float(effective_gravity_per_step(brief.rule, pull, constants.grain, step)), 9) for pull in pulls
+    rise, fall = constants.gravity, constants.gravity * constants.fall_factor
+    both = (
+        effective_gravity_per_step(brief.rule, rise, constants.grain, step),
+        effective_gravity_per_step(brief.rule, fall, constants.grain, step, falling=True),
     )
+    return tuple(round(float(pull), 9) for pull in both)
 
 
 def _pull(brief: Brief, constants: Constants, step: float) -> tuple[float, ...]:

@@ -61,7 +61,7 @@ class RateReach:
 def reach_by_rate(
     brief: Brief, constants: Constants, low_hz: int = LOW_HZ, high_hz: int = HIGH_HZ
 ) -> RateReach:
-    """Measure constants at each whole rate from low_hz to high_hz; rates with the same step are flown once."""
+    """Measure constants at each whole rate from low_hz to high_hz; equal steps are flown once."""
     if not 1 <= low_hz <= high_hz:
         raise ValueError(f"rates must be 1 ≤ low ≤ high, in Hz; got {low_hz} and {high_hz}")
     rule = brief.rule

@@ -36,7 +36,7 @@ DEFAULTS = {
 
 
 class Builder:
-    """Reads every table of a brief, gathers everything that is wrong, and builds the brief where nothing is."""
+    """Reads every table of a brief, gathers all that is wrong, and builds the brief where nothing is."""
 
     def __init__(self, raw: Mapping[str, Any], name: str) -> None:
         self.raw = raw
@@ -110,7 +110,7 @@ class Builder:
             return
         fixed = loop.steps == Loop.FIXED
         if fixed and loop.aim_at is not None:
-            allowed = 'aim_at only where steps = "each-frame"; in a fixed loop aims are judged at the constants\' own step'
+            allowed = 'aim_at only where steps = "each-frame"; a fixed loop is judged at its own step'
             self.wrong.append((("loop", "aim_at"), Misread(allowed, fix="take aim_at out")))
         if not fixed and "aim_at" not in self._raw("loop"):
             words = "aim_at, the rate at which aims are judged, where the game steps each frame"
@@ -242,7 +242,7 @@ class Builder:
         return _as_constants({name: getattr(today, name) for name in CONSTANT_NAMES})
 
     def _search(self) -> dict[str, Choice] | None:
-        """Return a choice for each constant that the brief's loop has; step_up and edge_allowance are fixed."""
+        """Return a choice for each constant that the loop has; step_up and edge_allowance are fixed ones."""
         search = self.tables.get("search")
         if search is None:
             return None
@@ -327,8 +327,8 @@ def _wishes(measure: str, raw: Mapping[str, Any], model: Any | None) -> list[tup
         low, high = model.at_least, model.at_most
         if low > high:
             words = "at_least that is not above at_most"
-            fix = f"{measure} = {{ at_least = {plain(high)}, at_most = {plain(low)}, within = {plain(model.within)} }}"
-            return [(path, Misread(words, fix=fix))]
+            bounds = f"at_least = {plain(high)}, at_most = {plain(low)}"
+            return [(path, Misread(words, better=f"{{ {bounds}, within = {plain(model.within)} }}"))]
     return []
 
 

@@ -1,4 +1,4 @@
-"""Which keys a brief knows, which come later, where a misplaced one belongs, and what a misspelt one meant."""
+"""Which keys a brief knows, which come later, where a misplaced one belongs, what a misspelt one meant."""
 
 from __future__ import annotations
 

@@ -22,7 +22,7 @@ class Spot:
 
 
 class Places:
-    """The spots of all keys of a text that tomllib accepts; tables, list elements and inline keys included."""
+    """The spots of all keys of a text that tomllib accepts: tables, list elements, keys in braces too."""
 
     def __init__(self, text: str) -> None:
         self.spots: dict[Path, Spot] = {}

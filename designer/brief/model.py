@@ -19,6 +19,14 @@ class Loop(StrEnum):
     FIXED = "fixed"
 
 
+def step_name(step: float) -> str:
+    """Return a step in seconds as one would write it in a brief: "8 ms", "60 Hz" where it is 1/60 s."""
+    ms, hz = step * 1000.0, 1.0 / step
+    if abs(ms - round(ms, 3)) > 1e-9 * ms and abs(hz - round(hz)) < 1e-9 * hz:
+        return f"{round(hz)} Hz"
+    return f"{ms:.6g} ms"
+
+
 @dataclass(frozen=True, slots=True)
 class Rate:
     """One or more rates that come to the same step."""
@@ -160,10 +168,18 @@ class Brief:
     lengths: Mapping[str, float] = field(default_factory=dict)
     """Named lengths of [units]: tile = 64."""
 
+    @property
+    def features(self) -> tuple[Ledge | Gap, ...]:
+        """Every ledge, then every gap: the order of shortfalls and bands."""
+        return (*self.ledges, *self.gaps)
+
     def nominal(self, constants: Constants) -> Rate:
         """Return the rate at which aims are judged for these constants."""
         if self.aim_at is not None:
             return self.aim_at
         if constants.step is None:
             raise ValueError("constants of a fixed loop need a step")
-        return Rate(f"{constants.step * 1000:.6g} ms", constants.step)
+        for rate in (*self.rates.supported, *self.rates.watched):
+            if rate.step == constants.step:
+                return rate
+        return Rate(step_name(constants.step), constants.step)

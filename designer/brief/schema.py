@@ -7,7 +7,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from difflib import get_close_matches
 from fractions import Fraction
-from typing import Annotated, Any
+from typing import Annotated, Any, cast
 
 from pydantic import BaseModel, ConfigDict, PlainValidator, ValidationError, ValidationInfo, create_model
 
@@ -33,7 +33,7 @@ class Context:
 
 def _with_context(read: Callable[[Any, Context], object]) -> PlainValidator:
     def validate(value: object, info: ValidationInfo) -> object:
-        return read(value, info.context)
+        return read(value, cast(Context, info.context))
 
     return PlainValidator(validate)
 

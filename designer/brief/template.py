@@ -206,7 +206,8 @@ max_gap = {{ at_least = {gap_bound}, within = {gap_within} }}        # bounds ar
 # also: apex_time, sure_gap, step_top, steps, effective_gravity, time_near_apex, flip_margin
 
 [rates]                       # where the same constants must hold
-supported = ["60 Hz", "72 Hz", "90 Hz", "120 Hz", "144 Hz", "240 Hz"]   # or {{ from = "30 Hz", to = "144 Hz" }}
+supported = ["60 Hz", "72 Hz", "90 Hz", "120 Hz", "144 Hz", "240 Hz"]
+#         or {{ from = "30 Hz", to = "144 Hz" }}: each whole Hz between
 watched   = ["30 Hz", "500 Hz"]    # shown, never scored
 spread_weight = 1.0                # what differences between the rates count
 

@@ -13,6 +13,8 @@ from designer.errors import Fault
 
 MOST_FAULTS = 20
 """After so many the file is probably no brief at all."""
+LONGEST_LINE = 2000
+"""Nobody writes a longer line in a brief; a file with slips and such lines is something else."""
 
 _HEADER = re.compile(r"\s*(\[\[?)\s*([\w.\-\"' ]+?)\s*(\]\]?)\s*(#.*)?")
 _PAIR = re.compile(r"""\s*("[^"]*"|'[^']*'|[\w.-]+)\s*=(?!=)\s*(.*)""", re.DOTALL)
@@ -54,8 +56,12 @@ class Helper:
                 "leapwright new FILE writes a brief to start from",
             )
             return None
+        for index, line in enumerate(self.lines):
+            if len(line) > LONGEST_LINE:
+                self._add(index, "", line, f"lines of at most {LONGEST_LINE} signs", "write a key a line")
+                return None
         table = ""
-        for statement in list(statements(self.lines)):
+        for statement in statements(self.lines):
             if len(self.faults) >= MOST_FAULTS:
                 self._add(
                     statement.first,
@@ -186,7 +192,7 @@ def _end_of(lines: list[str], first: int) -> int:
             if fence in lines[index]:
                 return index
         return first
-    if _HEADER.fullmatch(lines[first]) or "=" not in lines[first] and lines[first].lstrip().startswith("["):
+    if _HEADER.fullmatch(lines[first]) or ("=" not in lines[first] and lines[first].lstrip().startswith("[")):
         return first
     open_marks = _open_marks(lines[first], "")
     first_body = split_comment(lines[first])[0].rstrip()

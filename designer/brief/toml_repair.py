@@ -23,7 +23,7 @@ _KEY = re.compile(r"""\s*("[^"]*"|'[^']*'|[^\W\d][\w.-]*)\s*(:=|==|=>|->|=|:|(?=
 _SPACED_KEY = re.compile(r"\s*([^\W\d]\w*(?: \w+)+)\s*(:=|==|=)\s*")
 
 
-class Hopeless(ValueError):
+class Hopeless(ValueError):  # noqa: N818 (what the line is)
     """A line whose meaning cannot be told; says what is allowed, and what to do."""
 
     def __init__(self, allowed: str, fix: str) -> None:
@@ -60,7 +60,7 @@ class Repair:
     def __init__(self, text: str, length_unit: str, table: str) -> None:
         self.words: list[str] = []
         self._unit = length_unit
-        self._table = table
+        self._section = table
         self._key = ""
         lines = text.split("\n")
         body, comments = self._joined(lines)
@@ -120,7 +120,7 @@ class Repair:
         if self._text[self._at :].strip().startswith(("=", ":")):
             raise Hopeless("one equals sign between key and value", f"write {key} = and the value")
         value = self._value("")
-        if self._table == "targets" and value[0] not in "{[":
+        if self._section == "targets" and value[0] not in "{[":
             self.say("a target is a wish with its tolerance")
             value = as_target(value.strip("\"'"))
         rest = self._text[self._at :].strip()

@@ -27,7 +27,7 @@ _KIND_WORDS = {
 }
 
 
-class Misread(ValueError):
+class Misread(ValueError):  # noqa: N818 (what the value is)
     """One value that cannot be used: what is allowed there, and a way out."""
 
     def __init__(self, allowed: str, *, fix: str = "", better: str = "") -> None:
@@ -38,7 +38,7 @@ class Misread(ValueError):
         self.better = better
 
 
-class Misreadings(ValueError):
+class Misreadings(ValueError):  # noqa: N818
     """Several values inside one, each with the path from there to it."""
 
     def __init__(self, *items: tuple[tuple[str | int, ...], Misread]) -> None:
@@ -47,7 +47,7 @@ class Misreadings(ValueError):
 
 
 def exact(value: object) -> Fraction | None:
-    """Return a TOML number as an exact fraction; None where it is no number, not finite or out of all bounds."""
+    """Return a TOML number as an exact fraction; None where it is none, not finite or out of all bounds."""
     if isinstance(value, bool) or not isinstance(value, int | float | Decimal):
         return None
     if isinstance(value, float):
@@ -152,8 +152,8 @@ class Units:
         if kind in _PER and base.isidentifier():
             both = base in _MILLIMETRES and self.length in _MILLIMETRES
             size = plain(Fraction(_MILLIMETRES[base], _MILLIMETRES[self.length])) if both else "…"
-            fix = f"write the number in {self.unit_of(kind)}, or say in [units] how long one is: {base} = {size}"
-            raise Misread(words, fix=fix)
+            ways = f"write the number in {self.unit_of(kind)}, or say in [units] how long one is"
+            raise Misread(words, fix=f"{ways}: {base} = {size}")
         raise Misread(words, fix="write the number in one of these units")
 
     def _known(self, kind: str) -> dict[str, Fraction]:

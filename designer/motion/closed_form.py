@@ -47,8 +47,8 @@ SWEPT_NOISE = 1e-8
 """Largest noise in height, as a share of the landing step's drop. The noise is a bound some ten times what is
 seen, so the fraction is good to 1e-9; beyond it are flights of over about 6000 steps, and slow sinking."""
 
-# v is on the grain, so snap(v − a) = v − snap'(a) with snap' the mirrored mode. Ties are flagged, so the three
-# nearest modes are one. Toward zero is the one mode where the sign of v − a matters: (v − a ≥ 0, v − a ≤ 0).
+# v is on the grain, so snap(v − a) = v − snap'(a) with snap' the mirrored mode. Ties are flagged, so the
+# three nearest modes are one. Toward zero alone asks for the sign of v − a: (v − a ≥ 0, v − a ≤ 0).
 LOSS_MODES = {
     Mode.NEAREST_EVEN: (Mode.NEAREST_EVEN, Mode.NEAREST_EVEN),
     Mode.NEAREST_AWAY: (Mode.NEAREST_EVEN, Mode.NEAREST_EVEN),
@@ -62,14 +62,14 @@ LOSS_MODES = {
 def has_closed_form(rule: Rule, grain: Floats) -> Bools:
     """Return for each grain (any shape, length/s) whether jumps have a closed form under this rule.
 
-    They have one where nothing is rounded, or where velocity alone is, without carry, to a grain that is whole
-    or 2⁻ⁿ: multiples of other grains have no exact binary value.
+    They have one where nothing is rounded, or where velocity alone is, without carry, to a grain that is
+    whole or 2⁻ⁿ: multiples of other grains have no exact binary value.
     """
     grains = np.asarray(grain, dtype=np.float64)
     if rule.position.grain > 0.0:
         return np.zeros(grains.shape, dtype=bool)
     if rule.rounding.carry:
-        return grains == 0.0
+        return np.asarray(grains == 0.0)
     power_of_two = np.frexp(grains)[0] == 0.5
     exact: Bools = (grains >= 0.0) & (grains < np.inf) & ((np.floor(grains) == grains) | power_of_two)
     return exact
@@ -78,9 +78,9 @@ def has_closed_form(rule: Rule, grain: Floats) -> Bools:
 def closed_form(rule: Rule, launches: Launches, level: float = 0.0) -> tuple[Jumps, Bools]:
     """Return what becomes of every launch, and which of them must be stepped instead.
 
-    Both have the launches' broadcast shape; near_apex_steps is −1. A jump is flagged where the answer hangs on
-    float noise (a rounding tie, an apex or a landing within noise of its threshold) or where the rule has no
-    closed form; what stands in the result there means nothing. `level` in length units over the take-off.
+    Both have the launches' broadcast shape; near_apex_steps is −1. A jump is flagged where the answer hangs
+    on float noise (a rounding tie, an apex or a landing within noise of its threshold) or where the rule has
+    no closed form; what stands in the result there means nothing. `level`: length over the take-off.
     Nothing is validated: launches that make no sense come back flagged.
     """
     columns = launches.broadcast()
@@ -91,7 +91,7 @@ def closed_form(rule: Rule, launches: Launches, level: float = 0.0) -> tuple[Jum
     has_special = bool(np.any(special))
     special = np.broadcast_to(special, shape)
     kinds = (np.int8, np.int32, np.float64, np.int32, np.float64, np.float64, bool)
-    results: tuple[NDArray[Any], ...] = tuple(np.empty(shape, dtype=kind) for kind in kinds)
+    results = [np.empty(shape, dtype=kind) for kind in kinds]
     with np.errstate(all="ignore"):
         for place in _places(shape):
             size = results[0][place].size
@@ -101,11 +101,12 @@ def closed_form(rule: Rule, launches: Launches, level: float = 0.0) -> tuple[Jum
             first = np.ravel(special[place]) if has_special else None
             for result, values in zip(results, _fly(block, first), strict=True):
                 result[place] = np.reshape(values, result[place].shape)
-    flagged = results[6]
+    status, steps, apex, apex_step, fraction, velocity, flagged = results
     for sound in _sound(rule, launches):
         if not sound.all():
             flagged |= ~sound
-    return Jumps(*results[:6], near_apex_steps=np.full(shape, -1, dtype=np.int32)), flagged
+    uncounted = np.full(shape, -1, dtype=np.int32)
+    return Jumps(status, steps, apex, apex_step, fraction, velocity, uncounted), flagged
 
 
 def _sound(rule: Rule, launches: Launches) -> tuple[Bools, ...]:
@@ -178,8 +179,8 @@ def _fly(block: Block, special: Bools | None) -> tuple[NDArray[Any], ...]:
 def _first_step(block: Block, special: Bools, notes: Notes) -> tuple[Floats, Floats, Floats]:
     """Take the first step where it is unlike the others; return n, y and v, each (jumps,).
 
-    It is where gravity starts only with the second, or where the launch is off the grain. Done in the rule's own
-    operations, so ties need no flag.
+    It is where gravity starts only with the second, or where the launch is off the grain. Done in the rule's
+    own operations, so ties need no flag.
     """
     rows = np.flatnonzero(special)
     part = block.take(rows)
@@ -227,9 +228,7 @@ def _near_whole(ratio: Floats) -> Bools:
     return result
 
 
-def _rise(
-    block: Block, rising: Phase, loss: Floats, falling: tuple[Floats, Floats], notes: Notes
-) -> Phase:
+def _rise(block: Block, rising: Phase, loss: Floats, falling: tuple[Floats, Floats], notes: Notes) -> Phase:
     """Rise until v ≤ 0, and return the phase of the fall; `falling` is its loss and shift."""
     toward_zero = block.rule.rounding.mode is Mode.TOWARD_ZERO
     ratio = rising.v / rising.loss
@@ -322,6 +321,7 @@ def _limited(block: Block, phase: Phase, loss: Floats, never_at: Floats, notes: 
     """Return where falls land that come to the terminal speed before step `never_at` of the phase."""
     room = block.terminal_speed + phase.v - loss
     k = np.where(room >= 0.0, np.floor(room / phase.loss) + 1.0, 0.0)
+    # Where the limit is met in just the step that lands, noise must not put it after the landing.
     k = np.minimum(k, np.where(never_at >= 1.0, never_at - 1.0, 0.0))
     v = phase.v - phase.loss * k
     mode = block.rule.rounding.mode
@@ -342,7 +342,7 @@ def _limited(block: Block, phase: Phase, loss: Floats, never_at: Floats, notes: 
 
 
 def _near_flip(block: Block, losses: tuple[Floats, ...], landing_velocity: Floats) -> Bools:
-    """Return where rounding is so close to a tie (nearest modes) or a whole grain (others) that noise decides."""
+    """Return where noise decides the rounding: next to a tie (nearest modes) or a whole grain (others)."""
     result = np.zeros(block.size, dtype=bool)
     if not np.any(block.grain > 0.0):
         return result
@@ -376,7 +376,7 @@ def _outcome(block: Block, landing: Landing, still_from: Floats, notes: Notes) -
     fraction = np.ones(block.size)
     if rule.landing_test is LandingTest.SWEPT:
         fraction = np.minimum(np.maximum((landing.before - block.level) / landing.drop, 0.0), 1.0)
-    floats = (notes.apex, fraction, landing.v)
+    floats: tuple[Floats, ...] = (notes.apex, fraction, landing.v)
     if lands.all():
         status = np.zeros(block.size, dtype=np.int8)
         steps, apex_step = landing.n, notes.apex_step

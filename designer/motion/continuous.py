@@ -31,8 +31,8 @@ def continuous_airtime(
 ) -> Floats:
     """Return the seconds until the body comes down to `level`: v/g + √(2(apex − level)/(g·fall_factor)).
 
-    With fall_factor 1 this is (v + √(v² − 2gL))/g (University Physics vol. 1, section 4.3). NaN where the level
-    is above the apex. A downward launch falls with gravity·fall_factor from the start.
+    With fall_factor 1 this is (v + √(v² − 2gL))/g (University Physics vol. 1, section 4.3). NaN where the
+    level is above the apex. A downward launch falls with gravity·fall_factor from the start.
     """
     g, v, target, factor = _floats(gravity, launch_speed, level, fall_factor)
     falling = g * factor
@@ -91,9 +91,7 @@ def times_at_height(
     return up, continuous_airtime(g, v, target, factor)
 
 
-def constants_for(
-    apex: ArrayLike, airtime: ArrayLike, fall_factor: ArrayLike = 1.0
-) -> tuple[Floats, Floats]:
+def constants_for(apex: ArrayLike, airtime: ArrayLike, fall_factor: ArrayLike = 1.0) -> tuple[Floats, Floats]:
     """Return (gravity, launch_speed) of the jump with this apex and this airtime back to the take-off level.
 
     From airtime = √(2·apex/g)·(1 + 1/√fall_factor) and apex = v²/(2g).

@@ -1,7 +1,7 @@
 """What a grain does to gravity: the gravity that acts, where rounding flips, gravities that it leaves alone.
 
-With δ = g·h/q grains a step, rounding makes each step take a whole number D of grains, so the gravity that acts
-is D·q/h. D flips where δ passes m + ½ (nearest modes) or a whole number (the directed ones).
+With δ = g·h/q grains a step, rounding makes each step take a whole number D of grains, so the gravity that
+acts is D·q/h. D flips where δ passes m + ½ (nearest modes) or a whole number (the directed ones).
 """
 
 from __future__ import annotations
@@ -26,7 +26,7 @@ NEAR = 1e-9
 """This many grains from a flip, float noise decides."""
 
 LARGEST_DENOMINATOR = 1_000_000
-"""Steps are whole ms, or 1 over a rate; as fractions of a second they have no larger denominator than this."""
+"""Steps are whole ms, or 1 over a rate: as fractions of a second their denominators are no larger."""
 
 
 def flip_margin(
@@ -34,9 +34,9 @@ def flip_margin(
 ) -> Floats:
     """Return how far gravity may move before rounding flips at one of the steps, in gravity's unit.
 
-    gravity, grain, fall_factor: shapes that broadcast to S. steps: seconds, (columns,) or S + (columns,); the
-    smallest margin over them is taken, and over both gravities in play (gravity·fall_factor's is divided by the
-    factor). Returns an array S; NaN without a grain and with carry, where nothing flips.
+    gravity, grain, fall_factor: shapes that broadcast to S. steps: seconds, (columns,) or S + (columns,).
+    The smallest margin over the steps and over both gravities in play (that of gravity·fall_factor is divided
+    by the factor), shaped S; NaN without a grain and with carry, where nothing flips.
     """
     g, q, factor = (np.asarray(a, dtype=np.float64)[..., None] for a in (gravity, grain, fall_factor))
     h = np.asarray(steps, dtype=np.float64)
@@ -67,9 +67,9 @@ def effective_gravity_per_step(
 ) -> Floats:
     """Return the gravity that acts once v is on the grain, D·q/h, while rising or `falling`; broadcasts.
 
-    At a tie it is what the mode makes of one: the even D in nearest-even (from its second step on), the smaller
-    one in nearest-up, the smaller rising and the larger falling in nearest-away. `gravity` itself without a grain
-    and with carry, where the mean is exact.
+    `falling` says only which way: give it gravity·fall_factor. At a tie it is what the mode makes of one: the
+    even D in nearest-even (from its second step on), the smaller one in nearest-up, the smaller rising and
+    the larger falling in nearest-away. `gravity` itself without a grain, and with carry (exact in the mean).
     """
     g, q, h = (np.asarray(a, dtype=np.float64) for a in (gravity, grain, step))
     rounds = (q > 0.0) & (not rule.rounding.carry)
@@ -98,15 +98,13 @@ def _grains_to_flip(rule: Rule, grains: Floats) -> Floats:
     return off
 
 
-def aligned_gravities(
-    rule: Rule, grain: float, steps: Iterable[float], low: float, high: float
-) -> Floats:
+def aligned_gravities(rule: Rule, grain: float, steps: Iterable[float], low: float, high: float) -> Floats:
     """Return the gravities in [low, high] that rounding makes equal at every step, ascending, length/s².
 
     In nearest modes they are the multiples of q/gcd(steps): a whole number of grains at every step, which
-    rounding leaves alone, as far from flips as can be. In the directed modes a whole number of grains is the flip
-    itself; there each gravity is half a grain (at the longest step) to the side from which every step still
-    takes those grains: below for down and toward-zero (which then fits the rise only), above for up.
+    rounding leaves alone, as far from flips as can be. In the directed modes a whole number of grains is the
+    flip itself; there each gravity is half a grain (at the longest step) to the side from which every step
+    still takes those grains: below for down and toward-zero (which then fits the rise only), above for up.
     Empty without a grain and with carry, where there is nothing to align.
     """
     exact = [as_fraction(step) for step in steps]
@@ -141,7 +139,8 @@ def flip_gravities(
     flips = np.sort(np.concatenate(found))
     flips = flips[(flips > 0.0) & (flips >= low * (1.0 - 1e-12)) & (flips <= high * (1.0 + 1e-12))]
     # The same gravity computed from two steps may differ in its last bits.
-    return flips[np.diff(flips, prepend=-np.inf) > 1e-12 * flips]
+    distinct: Floats = flips[np.diff(flips, prepend=-np.inf) > 1e-12 * flips]
+    return distinct
 
 
 def flips_near(rule: Rule, gravity: float, grain: float, step: float, count: int) -> Floats:
@@ -155,7 +154,8 @@ def flips_near(rule: Rule, gravity: float, grain: float, step: float, count: int
     offset = 0.5 if rule.rounding.mode.is_nearest else 0.0
     middle = math.floor(gravity / apart - offset)
     first = middle - count if offset else max(1, middle - count)
-    flips = (np.arange(max(0, first), middle + 2 * count + 2) + offset) * apart
+    numbers = np.arange(max(0, first), middle + 2 * count + 2, dtype=np.float64)
+    flips: Floats = (numbers + offset) * apart
     return flips[np.argsort(np.abs(flips - gravity), kind="stable")][:count]
 
 

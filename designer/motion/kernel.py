@@ -20,6 +20,7 @@ from __future__ import annotations
 import hashlib
 import math
 import os
+import threading
 from functools import cache
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeAlias
@@ -37,6 +38,8 @@ if TYPE_CHECKING:
 EXPLICIT = 0
 SEMI_IMPLICIT = 1
 AVERAGE = 2
+
+_ONE_AT_A_TIME = threading.Lock()
 
 _LANDS = int(Status.LANDS)
 _NEVER_SLOWS = int(Status.NEVER_SLOWS)
@@ -182,12 +185,23 @@ def fly_each(
         near_apex_steps[i] = outcome[6]
 
 
-@cache
 def compiled() -> Callable[..., None]:
-    """Return `fly_each` as Numba compiles it; the first call imports Numba.
+    """Return `fly_each` as Numba compiles it; the first call imports Numba. Threads may call it at once."""
+    with _ONE_AT_A_TIME:
+        return _compile()
 
-    Kept on disk between runs. Numba looks only at the file of the function itself to see whether what it
-    kept is stale, so the folder's name is a hash of every source that is compiled.
+
+def is_compiled() -> bool:
+    """Whether loading Numba is paid for already, so that even small work may as well use it."""
+    return _compile.cache_info().currsize > 0
+
+
+@cache
+def _compile() -> Callable[..., None]:
+    """Compile, and keep the code on disk between runs.
+
+    Numba looks only at the file of the function itself to see whether what it kept is stale, so the folder's
+    name is a hash of every source that is compiled.
     """
     import numba
     from numba.extending import register_jitable

@@ -12,6 +12,8 @@ from designer.motion.rule import LandingTest, Rule
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    Floats = NDArray[np.float64]
+
 MEASURES = {
     "apex": "length",
     "apex_time": "time",
@@ -68,11 +70,11 @@ def of_flight(name: str, rule: Rule, launches: Launches, jumps: Jumps) -> NDArra
     return np.where(jumps.status == Status.LANDS, values, np.nan)
 
 
-def max_gap(airtime: NDArray[np.float64], run_speed: object, edge_allowance: object) -> NDArray[np.float64]:
+def max_gap(airtime: Floats, run_speed: Floats | float, edge_allowance: Floats | float) -> Floats:
     """Return run_speed·airtime + edge_allowance, length."""
-    return np.asarray(run_speed * airtime + edge_allowance, dtype=np.float64)  # type: ignore[operator]
+    return np.asarray(run_speed * airtime + edge_allowance, dtype=np.float64)
 
 
-def sure_gap(reach: NDArray[np.float64], run_speed: object, step: NDArray[np.float64]) -> NDArray[np.float64]:
+def sure_gap(reach: Floats, run_speed: Floats | float, step: Floats) -> Floats:
     """Return max(0, max_gap − run_speed·h): the gap in the worst phase of the take-off step, length."""
-    return np.maximum(0.0, reach - run_speed * step)  # type: ignore[operator]
+    return np.maximum(0.0, np.asarray(reach - run_speed * step, dtype=np.float64))

@@ -4,8 +4,8 @@ In such a phase height is a quadratic in the step number:
 
     y_k = y + h·(k·(v − shift) − loss·k(k − 1)/2),   v_k = v − loss·k
 
-`shift` says by how much the velocity that moves the body in a step falls short of the one at the step's start:
-0 (explicit), the loss of that step (semi-implicit) or half of it (average). Without rounding these are exact
+`shift` says by how much the velocity that moves the body in a step falls short of the one at its start: 0
+(explicit), the loss of that step (semi-implicit) or half of it (average). Without rounding these are exact
 samples of a parabola (Hairer, Lubich & Wanner, Geometric Numerical Integration, ch. I; from memory).
 """
 
@@ -42,7 +42,7 @@ def band(n: Floats, apex: Floats, high: float) -> Floats:
 
 @dataclass(frozen=True, slots=True)
 class Block:
-    """The launches of one block: arrays (jumps,), or single numbers where all are the same; units of Launches."""
+    """The launches of one block: arrays (jumps,), or single numbers where all are the same; see Launches."""
 
     rule: Rule
     level: float
@@ -70,7 +70,7 @@ class Block:
         return bool(np.any(self.grain == 0.0))
 
     def shift(self, rounded: Floats, unrounded: Floats) -> Floats:
-        """Return by how much the moving velocity falls short, given a step's loss after and before rounding."""
+        """Return how far the moving velocity falls short, given a step's loss after and before rounding."""
         if self.rule.integrator is Integrator.EXPLICIT:
             return np.zeros_like(rounded)
         lacks = rounded if self.rule.rounding.at is Place.BEFORE_MOVE else unrounded
@@ -118,7 +118,7 @@ class Phase:
 
 @dataclass(frozen=True, slots=True)
 class Landing:
-    """Where jumps land: step (infinity or NaN where never), height before that step, drop in it, v after it."""
+    """Where jumps land: the step (infinity or NaN: never), height before it, drop in it, v after it."""
 
     n: Floats
     before: Floats
@@ -137,7 +137,7 @@ class Landing:
 
 @dataclass(slots=True)
 class Notes:
-    """What is gathered on the way, arrays (jumps,): the top, doubts, dead ends, landings before the last phase."""
+    """What is gathered on the way, arrays (jumps,): top, doubts, dead ends, landings on the way."""
 
     apex: Floats
     apex_step: Floats

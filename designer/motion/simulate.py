@@ -69,7 +69,8 @@ def simulate(
     """Step every launch until it lands at `level`, and return what became of it.
 
     The result has the launches' broadcast shape and does not depend on `workers` or `compiled`. Where
-    `compiled` is None, large work is compiled by Numba and small work runs as plain Python. near_apex_steps
+    `compiled` is None, large work is compiled by Numba and small work runs as plain Python, unless compiled
+    code is there already. near_apex_steps
     is −1 unless `count_near_apex`. Raises InputError where a number cannot be used.
     """
     columns = launches.broadcast()
@@ -77,7 +78,7 @@ def simulate(
     shape = columns[0].shape
     size = columns[0].size
     if compiled is None:
-        compiled = _is_large(launches, level, size)
+        compiled = kernel.is_compiled() or _is_large(launches, level, size)
     results = _empty(size)
     codes = rule_codes(rule)
     fly_each = kernel.compiled() if compiled else kernel.fly_each

@@ -75,7 +75,7 @@ def failing_bands(brief: Brief, sweep: RateSweep) -> tuple[tuple[tuple[str, ...]
     A feature fails too where its jump never lands: nobody can say then what it reaches.
     """
     bands = []
-    for feature in (*brief.ledges, *brief.gaps):
+    for feature in brief.features:
         fails = np.zeros(len(sweep.hz), dtype=bool)
         for table in sweep.tables:
             if table.name not in feature.by:

@@ -70,7 +70,7 @@ def judge(
         failing, stuck = failing_bands(brief, sweep_rates(brief, constants, compiled=compiled))
     features = [
         _feature(brief, feature, constants, kin, rates, bands_of)
-        for feature, bands_of in zip((*brief.ledges, *brief.gaps), failing, strict=True)
+        for feature, bands_of in zip(brief.features, failing, strict=True)
     ]
     return Verdict(
         constants=constants,
@@ -116,8 +116,8 @@ def _rate_rows(
     columns["sure_gap"] = sure_gap(reach, constants.run_speed, steps)
     columns["step_top"] = columns["apex"] + constants.step_up
     used = steps[: 1 + len(brief.rates.supported)]
-    three = (np.array([value]) for value in (constants.gravity, constants.grain, constants.fall_factor))
-    columns["flip_margin"] = np.broadcast_to(flip_margin(brief.rule, *three, used[None, :]), steps.shape)
+    margin = flip_margin(brief.rule, constants.gravity, constants.grain, constants.fall_factor, used)
+    columns["flip_margin"] = np.broadcast_to(margin, steps.shape)
     rows = []
     for i, rate in enumerate(rates):
         lands = statuses[i] == Status.LANDS

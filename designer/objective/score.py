@@ -119,7 +119,7 @@ def _violations(brief: Brief, tables: Mapping[str, JumpTable]) -> tuple[Floats, 
     count = len(next(iter(tables.values())).lands)
     total = np.zeros(count)
     columns: list[Floats] = []
-    for feature in (*brief.ledges, *brief.gaps):
+    for feature in brief.features:
         worst = np.zeros(count)
         for name in feature.by:
             jump, table = jumps[name], tables[name]

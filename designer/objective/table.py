@@ -172,9 +172,10 @@ def _over(columns: Sequence[int], values: Floats) -> tuple[Floats, Floats]:
 
 
 def _gap_extremes(
-    kin: Kinematics, level: float, nominal: int, columns: Sequence[int], run: object, edge: object
+    kin: Kinematics, level: float, nominal: int, columns: Sequence[int], constants: Scalars
 ) -> dict[str, Extremes]:
     """Return max_gap and sure_gap at a level; both are 0 where the level is out of reach."""
+    run, edge = constants["run_speed"], constants["edge_allowance"]
     designs, count = kin.lands.shape
     steps = np.broadcast_to(kin.steps, (designs, count))
     reaches, sures = [], []
@@ -210,9 +211,8 @@ def extremes(
         measures[name] = Extremes(values[:, nominal], *_over(columns, values))
     apex, rise = measures["apex"], constants["step_up"]
     measures["step_top"] = Extremes(apex.nominal + rise, apex.low + rise, apex.high + rise)
-    run, edge = constants["run_speed"], constants["edge_allowance"]
     for level in kin.airtimes:
-        measures |= _gap_extremes(kin, level, nominal, columns, run, edge)
+        measures |= _gap_extremes(kin, level, nominal, columns, constants)
     if any(target.measure == "flip_margin" for jump in brief.jumps for target in jump.targets):
         measures["flip_margin"] = _flip_margins(brief, kin, columns, constants)
     return tuple(JumpTable(jump.name, lands, measures) for jump in brief.jumps)
@@ -222,9 +222,8 @@ def _flip_margins(brief: Brief, kin: Kinematics, columns: Sequence[int], constan
     """Return the flip margin, one number a design; where rounding never flips, infinitely far away."""
     designs, count = kin.lands.shape
     steps = np.broadcast_to(kin.steps, (designs, count))[:, columns]
-    three = (np.broadcast_to(np.asarray(constants[n], dtype=np.float64), (designs,)) for n in
-             ("gravity", "grain", "fall_factor"))  # fmt: skip
-    margin = flip_margin(brief.rule, *three, steps)
+    g, q, factor = (np.asarray(constants[name]) for name in ("gravity", "grain", "fall_factor"))
+    margin = np.broadcast_to(flip_margin(brief.rule, g, q, factor, steps), (designs,))
     margin = np.where(np.isnan(margin), np.inf, margin)
     return Extremes(margin, margin, margin)
 

@@ -5,6 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+import numpy as np
+from matplotlib.collections import LineCollection
+from matplotlib.patches import Rectangle
+
 from designer.analysis.arcs import Arc, GapShape, LedgeShape, Scene
 from designer.report import labels, style
 from designer.report.figures import head
@@ -64,18 +68,17 @@ def arcs(ax: Axes, picture: ArcPicture) -> Axes:
 
 def _paths(ax: Axes, picture: ArcPicture) -> None:
     """Draw today's arcs in grey, then the set's, the nominal one bold."""
-    for arc in picture.under:
-        ax.plot(arc.x, arc.y, color=style.TODAY, linewidth=1.3, alpha=0.85, zorder=2.0)
+    under = [np.column_stack((arc.x, arc.y)) for arc in picture.under]
+    thin = [np.column_stack((arc.x, arc.y)) for arc in picture.scene.arcs if not arc.nominal]
+    ax.add_collection(
+        LineCollection(under, colors=style.TODAY, linewidths=1.3, alpha=0.85, zorder=2.0), autolim=False
+    )
+    ax.add_collection(
+        LineCollection(thin, colors=picture.look.colour, linewidths=0.9, alpha=0.8, zorder=2.4), autolim=False
+    )
     for arc in picture.scene.arcs:
-        strong = arc.nominal
-        ax.plot(
-            arc.x,
-            arc.y,
-            color=picture.look.colour,
-            linewidth=2.0 if strong else 0.9,
-            alpha=1.0 if strong else 0.8,
-            zorder=2.6 if strong else 2.4,
-        )
+        if arc.nominal:
+            ax.plot(arc.x, arc.y, color=picture.look.colour, linewidth=2.0, zorder=2.6)
 
 
 def _enlarge(ax: Axes, picture: ArcPicture) -> None:
@@ -110,10 +113,8 @@ def _ground(ax: Axes, picture: ArcPicture) -> None:
     ax.add_patch(_box(start, -picture.thickness, end - start, picture.thickness, "reach"))
 
 
-def _box(x: float, y: float, width: float, height: float, must: str):  # type: ignore[no-untyped-def]
+def _box(x: float, y: float, width: float, height: float, must: str) -> Rectangle:
     """Return a filled box for what must be made, an open dashed one for what must not."""
-    from matplotlib.patches import Rectangle
-
     keep_out = must == "stay-out"
     return Rectangle(
         (x, y),
@@ -143,10 +144,19 @@ def _slab(ax: Axes, ledge: LedgeShape, thickness: float) -> None:
 
 
 def _far_side(ax: Axes, gap: GapShape, picture: ArcPicture) -> None:
-    """Draw the far side of a gap, and dotted what edge_allowance adds to it."""
+    """Draw the far side of a gap with its wall, and dotted what edge_allowance adds to it."""
     end = picture.x_range[1]
-    ax.add_patch(
-        _box(gap.width, gap.far_level - picture.thickness, end - gap.width, picture.thickness, gap.must)
+    slab = _box(gap.width, gap.far_level - picture.thickness, end - gap.width, picture.thickness, gap.must)
+    if gap.must == "stay-out":
+        slab.set(facecolor=style.PAPER, zorder=1.85)
+    ax.add_patch(slab)
+    ax.plot(
+        [gap.width, gap.width],
+        [picture.y_range[0], gap.far_level],
+        color=style.SOLID,
+        linewidth=1.2,
+        linestyle=style.LEDGE_DASH[gap.must],
+        zorder=1.86,
     )
     if picture.scene.edge_allowance > 0.0:
         ax.plot(

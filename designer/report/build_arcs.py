@@ -20,7 +20,9 @@ def arc_panels(brief: Brief, result: SearchResult) -> list[ArcPicture]:
     rows = [one for one in rows if one.name != "today"] or rows
     scenes = [trace_arcs(brief, one.constants) for one in rows]
     under = trace_arcs(brief, today[0].constants) if today and rows != today else None
-    beneath = under.arcs if under is not None and all(s.by_distance == under.by_distance for s in scenes) else ()
+    beneath = (
+        under.arcs if under is not None and all(s.by_distance == under.by_distance for s in scenes) else ()
+    )
     x_range, y_range = _scene_ranges([*scenes, *([under] if beneath and under else [])])
     lone = len(rows) == 1
     inset, inset_x, inset_y = _inset([*scenes, *([under] if beneath and under else [])])
@@ -39,7 +41,8 @@ def arc_panels(brief: Brief, result: SearchResult) -> list[ArcPicture]:
             inset=inset,
             inset_x=inset_x,
             inset_y=inset_y,
-            thickness=0.009 * max(x_range[1] - x_range[0] if scene.by_distance else 0.0, y_range[1] - y_range[0]),
+            thickness=0.009
+            * max(x_range[1] - x_range[0] if scene.by_distance else 0.0, y_range[1] - y_range[0]),
             small=not lone,
         )
         for one, scene in zip(rows, scenes, strict=True)

@@ -7,9 +7,14 @@ from collections.abc import Sequence
 import numpy as np
 
 from designer.report import findings, style
-from designer.report.figures import FrontPicture, FrontPoint
+from designer.report.score_figures import FrontPicture, FrontPoint
 from designer.report.shown import shown
 from designer.search.result import SearchResult
+
+SUBTITLE = (
+    "Grey: sets that no other beats in both. Filled: on target; hollow: something is out of tolerance. "
+    "Tinted: miss below 1"
+)
 
 
 def front(result: SearchResult) -> FrontPicture | None:
@@ -34,8 +39,7 @@ def front(result: SearchResult) -> FrontPicture | None:
     (x_range, x_log), (y_range, y_log) = _axis(xs), _axis(ys)
     return FrontPicture(
         title=findings.front_title(result),
-        subtitle="Grey: sets that no other beats in both. Filled: on target; hollow: something is out of tolerance. "
-        "Tinted: miss below 1",
+        subtitle=SUBTITLE,
         front_spread=np.array([p[0] for p in points], dtype=np.float64),
         front_miss=np.array([p[1] for p in points], dtype=np.float64),
         named=named,
@@ -48,7 +52,7 @@ def front(result: SearchResult) -> FrontPicture | None:
 def _axis(values: Sequence[float]) -> tuple[tuple[float, float], bool]:
     """Return a range with room around the values, and whether it should be logarithmic."""
     low, high = min(values), max(values)
-    if low > 0.0 and high > 15.0 * low:
+    if low > 0.0 and high > 6.0 * low:
         room = (high / low) ** 0.1
         return (low / room, high * room), True
     span = max(high - low, 0.1 * high, 1e-6)
@@ -57,5 +61,7 @@ def _axis(values: Sequence[float]) -> tuple[tuple[float, float], bool]:
 
 def front_alt(picture: FrontPicture) -> str:
     """Return the trade-off in a few sentences."""
-    places = ", ".join(f"{p.label} misses by {p.miss:.3g} and spreads {p.rate_spread:.3g}" for p in picture.named)
+    places = ", ".join(
+        f"{p.label} misses by {p.miss:.3g} and spreads {p.rate_spread:.3g}" for p in picture.named
+    )
     return f"{picture.title}. In tolerances: {places}."

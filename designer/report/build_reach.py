@@ -13,8 +13,8 @@ from designer.brief.model import Brief, Gap, Ledge, Loop
 from designer.objective.bands import band_names
 from designer.report import findings, style
 from designer.report.figures import Breach, Demand, ReachPicture, Thread
-from designer.report.words import number
 from designer.report.shown import Shown, pair, shown
+from designer.report.words import number
 from designer.search.result import Candidate, SearchResult
 
 if TYPE_CHECKING:
@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     Floats = NDArray[np.float64]
 
 WORDS = {"reach": "must reach", "cross": "must cross", "stay-out": "must stay out"}
+KEY = "triangles: supported rates (hollow: watched); grey band: margin; hatched: demand broken"
 
 
 def rate_word(brief: Brief) -> str:
@@ -47,7 +48,7 @@ def _demand(feature: Ledge | Gap, unit: str) -> Demand:
 def _breaches(
     threads: Sequence[Thread], demands: Sequence[Demand], span: tuple[float, float]
 ) -> tuple[Breach, ...]:
-    """Return where each thread breaks each demand, beyond float noise: within the supported rates, and beyond."""
+    """Return where each thread breaks each demand (float noise aside), in the supported span and beyond."""
     found = []
     for t, thread in enumerate(threads):
         supported = (thread.rate >= span[0]) & (thread.rate <= span[1])
@@ -60,8 +61,9 @@ def _breaches(
     return tuple(found)
 
 
-def _y_range(threads: Sequence[Thread], demands: Sequence[Demand], at: Sequence[float]) -> tuple[float, float]:
-    """Return a range that shows demands and supported rates whole, and as much of the rest as stays readable."""
+def _y_range(threads: Sequence[Thread], demands: Sequence[Demand], at: Sequence[float],
+             beyond: float = 1.5) -> tuple[float, float]:  # fmt: skip
+    """Return a range that shows demands and supported rates whole, and of the rest `beyond` as much again."""
     core = [value for demand in demands for value in (demand.value, demand.bound)]
     finite: list[float] = []
     for thread in threads:
@@ -72,13 +74,17 @@ def _y_range(threads: Sequence[Thread], demands: Sequence[Demand], at: Sequence[
     low, high = min(core), max(core)
     span = max(high - low, 0.04 * max(abs(high), abs(low)), 1e-9)
     if finite:
-        low = max(min(low, *finite, low), low - 1.5 * span)
-        high = min(max(high, *finite, high), high + 1.5 * span)
+        low = max(min(low, *finite, low), low - beyond * span)
+        high = min(max(high, *finite, high), high + beyond * span)
     return low - 0.1 * span, high + 0.1 * span
 
 
 def _remarks(
-    brief: Brief, sets: Sequence[Shown], threads: Sequence[Thread], y: tuple[float, float], kind: str
+    brief: Brief,
+    sets: Sequence[Shown],
+    threads: Sequence[Thread],
+    y: tuple[float, float],
+    about: tuple[str, Sequence[int] | None],
 ) -> list[str]:
     """Return sentences on what the title leaves out: never landing, off the scale, beyond supported rates."""
     said = []
@@ -94,13 +100,17 @@ def _remarks(
             if off.any():
                 bands = findings.bands_text(band_names(off, LOW_HZ))
                 said.append(f"{one.name}: off the scale at {bands}, {word} {extreme(thread.reach):.4g}.")
-        said += findings.outside_sentences(brief, kind, one.name, one.verdict)
+        said += findings.outside_sentences(brief, about[0], one.name, one.verdict, about[1])
     return said
 
 
 def _picture(brief: Brief, sets: Sequence[Shown], reaches: Sequence[tuple[RateReach, Floats]],
-             demands: tuple[Demand, ...], words: tuple[str, str, str, str]) -> ReachPicture:  # fmt: skip
-    """Put one picture of reach against rate together; words are title, subtitle, y label, "ledge" or "gap"."""
+             demands: tuple[Demand, ...], words: tuple[str, str, str],
+             about: tuple[str, Sequence[int] | None]) -> ReachPicture:  # fmt: skip
+    """Put one picture of reach against rate together; words are title, subtitle, y label.
+
+    `about` is "ledge" or "gap", and the indices of those that the picture is about (None: all).
+    """
     threads = tuple(_thread(one, *found) for one, found in zip(sets, reaches, strict=True))
     supported = tuple(hz for rate in brief.rates.supported for hz in findings.hz_of(rate))
     y_range = _y_range(threads, demands, supported)
@@ -114,7 +124,7 @@ def _picture(brief: Brief, sets: Sequence[Shown], reaches: Sequence[tuple[RateRe
         supported=supported,
         watched=tuple(hz for rate in brief.rates.watched for hz in findings.hz_of(rate)),
         y_range=y_range,
-        remarks=tuple(_remarks(brief, sets, threads, y_range, words[3])),
+        remarks=tuple(_remarks(brief, sets, threads, y_range, about)),
         x_label=f"{rate_word(brief)} (Hz)",
     )
 
@@ -131,11 +141,13 @@ def reach(brief: Brief, sets: Sequence[Shown], title: str) -> ReachPicture:
     demands = tuple(_demand(ledge, brief.length_unit) for ledge in brief.ledges)
     stepped = any(one.constants.step_up for one in sets)
     what = "Highest ledge that is made (apex + step_up)" if stepped else "Apex of the jump"
-    subtitle = f"{what} at each whole {rate_word(brief)}; triangles: supported rates (hollow: watched)"
+    subtitle = f"{what} at each whole {rate_word(brief)}"
     if demands:
-        subtitle += "; grey band: margin; hatched: demand broken"
+        subtitle += f"; {KEY}"
     label = f"{'step_top' if stepped else 'apex'} ({brief.length_unit})"
-    return _picture(brief, sets, [(s, s.step_top) for s in sweeps], demands, (title, subtitle, label, "ledge"))
+    return _picture(
+        brief, sets, [(s, s.step_top) for s in sweeps], demands, (title, subtitle, label), ("ledge", None)
+    )
 
 
 def reach_panels(brief: Brief, result: SearchResult) -> list[ReachPicture]:
@@ -146,9 +158,13 @@ def reach_panels(brief: Brief, result: SearchResult) -> list[ReachPicture]:
     for one in rows:
         sets = [one] if one.name == "today" else [*today, one]
         pictures.append(reach(brief, sets, panel_title(brief, one)))
-    low, high = min(p.y_range[0] for p in pictures), max(p.y_range[1] for p in pictures)
+    # One set that soars beyond the supported rates must not flatten the others' panels.
+    ranges = [_y_range(p.threads, p.demands, p.supported, 0.3) for p in pictures]
+    low, high = min(r[0] for r in ranges), max(r[1] for r in ranges)
     return [
-        replace(p, subtitle="", breaches=_own(p), y_range=(low, high), remarks=(), label_threads=False, small=True)
+        replace(
+            p, subtitle="", breaches=_own(p), y_range=(low, high), remarks=(), label_threads=False, small=True
+        )
         for p in pictures
     ]
 
@@ -186,10 +202,10 @@ def gap_reaches(brief: Brief, result: SearchResult, best: Candidate) -> list[Rea
         reaches = [(s, s.gaps[level].sure_gap if sure else s.gaps[level].max_gap) for s in sweeps]
         side = "level with the take-off" if level == 0.0 else f"at height {number(level)}"
         what = "Widest gap that is surely crossed" if sure else "Widest gap that can be crossed"
-        subtitle = f"{what}, far side {side}; triangles: supported rates (hollow: watched); grey band: margin; hatched: demand broken"
+        subtitle = f"{what}, far side {side}; {KEY}"
         title = findings.compare("gap", today, best, brief, mine)
         label = f"{'sure_gap' if sure else 'max_gap'} ({brief.length_unit})"
-        pictures.append(_picture(brief, sets, reaches, demands, (title, subtitle, label, "gap")))
+        pictures.append(_picture(brief, sets, reaches, demands, (title, subtitle, label), ("gap", mine)))
     return pictures
 
 

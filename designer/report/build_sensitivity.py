@@ -9,7 +9,7 @@ import numpy as np
 
 from designer.analysis.sensitivity import Nudge, one_increment
 from designer.brief.model import Brief
-from designer.report.figures import Bar
+from designer.report.score_figures import Bar
 from designer.report.shown import NEAREST
 from designer.search.result import Candidate
 
@@ -42,8 +42,12 @@ def sensitivity(brief: Brief, best: Candidate) -> SensitivityPicture | None:
     columns.append(("rate spread", _bars(labels, found.nudges, [n.rate_spread for n in found.nudges])))
     name = best.label or NEAREST
     title = sensitivity_title(name, columns, found.nudges)
-    subtitle = "Change for one increment, in tolerances; tinted: within one tolerance; hatched: crosses a flip"
-    return SensitivityPicture(title, subtitle, labels, tuple(columns), _limit(columns), f"{title}. {subtitle}.")
+    subtitle = (
+        "Change for one increment, in tolerances; tinted: within one tolerance; hatched: crosses a flip"
+    )
+    return SensitivityPicture(
+        title, subtitle, labels, tuple(columns), _limit(columns), f"{title}. {subtitle}."
+    )
 
 
 def nudge_label(nudge: Nudge) -> str:

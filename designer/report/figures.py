@@ -1,10 +1,10 @@
-"""The pictures themselves: each takes plain data and an axes, draws, and returns the axes. Nothing is computed."""
+"""The picture of reach against frame rate: plain data and an axes in, the axes out, nothing computed."""
 
 from __future__ import annotations
 
 import textwrap
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -78,6 +78,7 @@ class ReachPicture:
     """One panel among several: a smaller title."""
 
 
+MOST_TRIANGLES = 24
 RATE_TICKS = (20, 30, 40, 60, 90, 120, 180, 240, 360, 500, 700, 1000)
 
 
@@ -102,26 +103,6 @@ def head(ax: Axes, title: str, subtitle: str = "", *, small: bool = False) -> No
         )
 
 
-def banner(ax: Axes, title: str, subtitle: str) -> None:
-    """Write one heading over a row of panels, above the small title of the first."""
-    for text, up, size, weight, colour in (
-        (title, 46, style.FONT_TITLE, "bold", style.INK),
-        (subtitle, 28, style.FONT_SMALL, "normal", style.QUIET),
-    ):
-        ax.annotate(
-            text,
-            (0, 1),
-            (0, up),
-            xycoords="axes fraction",
-            textcoords="offset points",
-            fontsize=size,
-            fontweight=weight,
-            color=colour,
-            va="bottom",
-            annotation_clip=False,
-        )
-
-
 def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     """Draw how far each set reaches at every whole rate, with the demands as lines across."""
     ax.set_xscale("log")
@@ -134,12 +115,13 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
         _demand(ax, demand, picture.y_range)
     for breach in picture.breaches:
         thread, bound = picture.threads[breach.thread], picture.demands[breach.demand].bound
+        # Both edges of each rate's step, so that a rate that stands alone is filled too.
+        edges = (thread.rate[:, None] + np.array([-0.5, 0.5])).ravel()
         ax.fill_between(
-            thread.rate,
+            edges,
             bound,
-            thread.reach,
-            where=breach.where.tolist(),
-            step="mid",
+            np.repeat(thread.reach, 2),
+            where=np.repeat(breach.where, 2).tolist(),
             facecolor=style.BREACH,
             edgecolor=style.BREACH_TEXT,
             hatch=style.HATCH,
@@ -169,7 +151,7 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     head(ax, picture.title, picture.subtitle, small=picture.small)
     _reach_labels(ax, picture)
     if picture.remarks:
-        _foot(ax, picture.remarks)
+        foot(ax, picture.remarks)
     return ax
 
 
@@ -192,7 +174,20 @@ def _demand(ax: Axes, demand: Demand, y_range: tuple[float, float]) -> None:
 def _rug(ax: Axes, rates: Sequence[float], fill: str) -> None:
     """Mark rates at the foot of the axes."""
     low, high = ax.get_xlim()
-    shown = [rate for rate in rates if low <= rate <= high]
+    shown = sorted(rate for rate in rates if low <= rate <= high)
+    if len(shown) > MOST_TRIANGLES:
+        # Too many to tell apart: a bar from the first to the last.
+        ax.plot(
+            [shown[0], shown[-1]],
+            [0.0, 0.0],
+            transform=ax.get_xaxis_transform(),
+            color=style.INK,
+            linewidth=4.0,
+            solid_capstyle="butt",
+            clip_on=False,
+            zorder=4,
+        )
+        shown = [shown[0], shown[-1]]
     ax.plot(
         shown,
         [0.0] * len(shown),
@@ -225,7 +220,7 @@ def _reach_labels(ax: Axes, picture: ReachPicture) -> None:
     labels.column(ax, heights, texts, colours, bold)
 
 
-def _foot(ax: Axes, remarks: Sequence[str]) -> None:
+def foot(ax: Axes, remarks: Sequence[str]) -> None:
     """Write remarks under the axis label."""
     text = "\n".join(textwrap.fill(remark, style.FOOT_WIDTH, subsequent_indent="    ") for remark in remarks)
     ax.annotate(
@@ -238,151 +233,4 @@ def _foot(ax: Axes, remarks: Sequence[str]) -> None:
         color=style.QUIET,
         va="top",
         annotation_clip=False,
-    )
-
-
-@dataclass(frozen=True, slots=True)
-class FrontPoint:
-    """One named set in the trade-off picture."""
-
-    label: str
-    look: Look
-    rate_spread: float
-    miss: float
-    on_target: bool
-
-
-@dataclass(frozen=True, slots=True)
-class FrontPicture:
-    """Miss against rate spread, both in tolerances."""
-
-    title: str
-    subtitle: str
-    front_spread: Floats
-    """(points,) ascending: sets that nothing beats in both."""
-    front_miss: Floats
-    named: tuple[FrontPoint, ...]
-    x_range: tuple[float, float]
-    y_range: tuple[float, float]
-    log: tuple[bool, bool]
-    """Whether the axes are logarithmic: (spread, miss)."""
-    remarks: tuple[str, ...] = field(default=())
-
-
-def front(ax: Axes, picture: FrontPicture) -> Axes:
-    """Draw what precision costs in rate spread, with the shortlist by name; hollow where not on target."""
-    ax.set_xscale("log" if picture.log[0] else "linear")
-    ax.set_yscale("log" if picture.log[1] else "linear")
-    ax.set_xlim(*picture.x_range)
-    ax.set_ylim(*picture.y_range)
-    ax.grid(color=style.FAINT, linewidth=0.7)
-    if picture.y_range[0] < 1.0:
-        ax.axhspan(picture.y_range[0], min(1.0, picture.y_range[1]), color=style.GOOD, zorder=0.5)
-        ax.axhline(1.0, color=style.QUIET, linewidth=0.9, linestyle=(0, (2, 2)), zorder=0.6)
-    ax.plot(
-        picture.front_spread,
-        picture.front_miss,
-        color=style.TODAY,
-        marker="o",
-        markersize=3.5,
-        linewidth=1.2,
-        drawstyle="steps-post",
-        zorder=1.5,
-    )
-    texts = []
-    for point in picture.named:
-        ax.plot(
-            [point.rate_spread],
-            [point.miss],
-            linestyle="none",
-            marker=point.look.marker,
-            markersize=10,
-            markerfacecolor=point.look.colour if point.on_target else style.PAPER,
-            markeredgecolor=point.look.text_colour,
-            markeredgewidth=1.8,
-            zorder=3,
-        )
-        texts.append(
-            ax.text(
-                point.rate_spread,
-                point.miss,
-                point.label,
-                color=point.look.text_colour,
-                fontweight="bold",
-                fontsize=style.FONT,
-                zorder=4,
-            )
-        )
-    ax.set_xlabel("rate spread (tolerances)")
-    ax.set_ylabel("miss (tolerances)")
-    head(ax, picture.title, picture.subtitle)
-    spots = [(point.rate_spread, point.miss) for point in picture.named]
-    others = list(zip(picture.front_spread.tolist(), picture.front_miss.tolist(), strict=True))
-    labels.beside(ax, [*spots, *others], texts, len(spots))
-    if picture.remarks:
-        _foot(ax, picture.remarks)
-    return ax
-
-
-@dataclass(frozen=True, slots=True)
-class Bar:
-    """One nudge in the sensitivity picture."""
-
-    label: str
-    value: float | None
-    """Change in tolerances; None where the nudged jump never lands."""
-    flip: bool
-
-
-def sensitivity(ax: Axes, name: str, bars: Sequence[Bar], limit: float, row_labels: bool = True) -> Axes:
-    """Draw the change of one measure for one increment of each constant, in tolerances; flips are hatched."""
-    rows = np.arange(len(bars))
-    ax.set_xlim(-limit, limit)
-    ax.set_ylim(len(bars) - 0.4, -0.6)
-    ax.axvspan(-1.0, 1.0, color=style.GOOD, zorder=0.5)
-    ax.axvline(0.0, color=style.INK, linewidth=0.9, zorder=3)
-    for row, bar in zip(rows.tolist(), bars, strict=True):
-        if bar.value is None:
-            _bar_text(ax, row, 0.0, "never lands", style.BREACH_TEXT)
-            continue
-        shown = float(np.clip(bar.value, -limit, limit))
-        ax.barh(
-            row,
-            shown,
-            height=0.62,
-            facecolor=style.BREACH if bar.flip else style.CANDIDATE_LOOKS[0].colour,
-            edgecolor=style.BREACH_TEXT if bar.flip else style.CANDIDATE_LOOKS[0].colour,
-            hatch=style.HATCH if bar.flip else None,
-            linewidth=0.8,
-            zorder=2,
-        )
-        if shown != bar.value:
-            ax.plot([shown], [row], marker=">" if shown > 0 else "<", color=style.INK, clip_on=False, zorder=4)
-        number = f"{bar.value:+.2f}".replace("-", "−") if abs(bar.value) >= 0.005 else "0"
-        _bar_text(ax, row, shown, number, style.BREACH_TEXT if bar.flip else style.INK, limit)
-    ax.set_yticks(rows, [bar.label for bar in bars] if row_labels else [""] * len(bars))
-    ax.tick_params(axis="y", length=0)
-    for side in ("left", "bottom"):
-        ax.spines[side].set_visible(side == "bottom")
-    ax.set_title(name, fontsize=style.FONT, pad=6.0)
-    ax.set_xlabel("tolerances", fontsize=style.FONT_SMALL)
-    return ax
-
-
-def _bar_text(ax: Axes, row: float, end: float, text: str, colour: str, limit: float = 1.0) -> None:
-    """Write at the end of a bar, on the side where there is room."""
-    right = end >= 0
-    if abs(end) > 0.45 * limit:
-        # A long bar leaves no room beyond its end: write on the empty side of the axis.
-        end, right = 0.0, not right
-    ax.annotate(
-        text,
-        (end, row),
-        (4 if right else -4, 0),
-        textcoords="offset points",
-        ha="left" if right else "right",
-        va="center",
-        fontsize=style.FONT_SMALL - 1,
-        color=colour,
-        zorder=4,
     )

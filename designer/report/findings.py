@@ -57,7 +57,7 @@ def judged(verdict: Verdict, kind: str, index: int) -> FeatureVerdict:
 def failing_clause(kind: str, must: str, name: str, bands: Sequence[str], most: int = MOST_BANDS) -> str:
     """Return "billboard opens at 201–250 Hz"; a demand that holds everywhere says so."""
     if not bands:
-        return f"{name} holds from {FULL_RANGE}"
+        return f"{name} holds throughout"
     return f"{name} {CLAUSES[kind, must]} at {bands_text(bands, most)}"
 
 
@@ -96,7 +96,8 @@ def compare(
         return f"With {label} {failing_clause(kind, feature.must, feature.name, telling)}"
     also = "today and " if today is not None else ""
     whole = not any(now.values()) and (today is None or not any(one.failing for one in was.values()))
-    return f"Every {kind} holds from {FULL_RANGE if whole else _span_text(span)}, {also}with {label}"
+    held = rows[0][1].name if len(rows) == 1 else f"Every {kind}"
+    return f"{held} holds from {FULL_RANGE if whole else _span_text(span)}, {also}with {label}"
 
 
 def hz_of(rate: Rate) -> list[float]:
@@ -108,8 +109,12 @@ def hz_of(rate: Rate) -> list[float]:
 
 
 def supported_span(brief: Brief) -> tuple[float, float]:
-    """Return the lowest and highest supported rate, Hz."""
+    """Return the lowest and highest rate that counts, supported or nominal, Hz."""
     hz = [value for rate in brief.rates.supported for value in hz_of(rate)]
+    if brief.aim_at is not None:
+        hz += hz_of(brief.aim_at)
+    elif brief.base is not None and brief.base.step is not None:
+        hz.append(1.0 / brief.base.step)
     return (min(hz), max(hz)) if hz else (20.0, 1000.0)
 
 
@@ -135,14 +140,16 @@ def _still(bands: Sequence[str], span: tuple[float, float]) -> str:
     return f"at {bands_text(within)}" if within else f"at no rate from {_span_text(span)}"
 
 
-def outside_sentences(brief: Brief, kind: str, name: str, verdict: Verdict) -> list[str]:
+def outside_sentences(
+    brief: Brief, kind: str, name: str, verdict: Verdict, only: Sequence[int] | None = None
+) -> list[str]:
     """Return what fails beyond the supported rates: nobody's demand, but worth knowing."""
     span = supported_span(brief)
     said = []
     for what, index, feature in features(brief):
         bands = judged(verdict, what, index).failing
         beyond = [band for band in bands if band not in touching(bands, span)]
-        if what == kind and beyond:
+        if what == kind and beyond and (only is None or index in only):
             said.append(failing_clause(kind, feature.must, feature.name, beyond))
     return [f"{name}, beyond the supported rates: {'; '.join(said)}."] if said else []
 

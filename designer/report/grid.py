@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from rich import box
@@ -13,6 +13,8 @@ from rich.text import Text
 
 from designer.report.style import TERMINAL
 
+ONE_LINE = 12
+"""Longest head that stays on one line where its cells are narrower."""
 PADDING = 2
 """Blank characters between two columns."""
 
@@ -28,16 +30,26 @@ class Column:
     """Longer text is folded."""
 
     @property
+    def lined_up(self) -> tuple[str, ...]:
+        """The cells, with a blank where others have a "!", so that figures stand under each other."""
+        if not self.right or not any(text.endswith("!") for text in self.cells):
+            return self.cells
+        return tuple(text if text.endswith("!") else f"{text}\u00a0" for text in self.cells)
+
+    @property
     def width(self) -> int:
-        """Characters that it needs, folded where it is longer than allowed."""
-        return min(self.widest, max(cell_len(text) for text in (self.head, *self.cells)))
+        """Characters that it needs: its cells as they are where allowed, a long head on two lines."""
+        head = cell_len(self.head)
+        if head > ONE_LINE:
+            head = max([-(-head // 2), *(cell_len(word) for word in self.head.split())])
+        return min(self.widest, max([head, *(cell_len(text) for text in self.lined_up)]))
 
 
 @dataclass(frozen=True, slots=True)
 class Grid:
     """Columns that stay (left and right) and columns that may go to a further table (middle).
 
-    Cells that end in "!" are emphasised on a terminal. Renders with rich; without a terminal it is plain text.
+    Cells that end in "!" are emphasised on a terminal; elsewhere it renders as plain text.
     """
 
     left: tuple[Column, ...]
@@ -46,18 +58,21 @@ class Grid:
     sections: frozenset[int] = field(default_factory=frozenset)
     """Rows after which a line is drawn."""
 
-    def blocks(self, width: int) -> Iterator[tuple[Column, ...]]:
-        """Yield the columns of each table that fits a width in characters; at least one middle column each."""
-        room = width - sum(column.width + PADDING for column in (*self.left, *self.right)) - 1
-        taken: list[Column] = []
-        used = 0
-        for column in self.middle:
-            if taken and used + column.width + PADDING > room:
-                yield tuple(taken)
-                taken, used = [], 0
-            taken.append(column)
-            used += column.width + PADDING
-        yield tuple(taken)
+    def blocks(self, width: int) -> list[tuple[Column, ...]]:
+        """Return the columns of each table that fits a width in characters, of about equal number.
+
+        Every block has at least one middle column, even where that is too wide.
+        """
+        for count in range(1, len(self.middle) + 1):
+            size = -(-len(self.middle) // count)
+            found = [self.middle[i : i + size] for i in range(0, len(self.middle), size)]
+            if all(self._needs(block) <= width for block in found):
+                return found
+        return [(column,) for column in self.middle]
+
+    def _needs(self, block: Sequence[Column]) -> int:
+        """Return the width of a table with these middle columns."""
+        return sum(column.width + PADDING for column in (*self.left, *block, *self.right)) + 1
 
     def __rich_console__(self, console: Console, options: ConsoleOptions) -> RenderResult:
         """Render as one or more tables for the width that there is."""
@@ -69,18 +84,20 @@ class Grid:
 
 def _table(columns: Sequence[Column], sections: frozenset[int]) -> Table:
     """Return a rich table of plain columns."""
-    table = Table(box=box.SIMPLE_HEAD, pad_edge=False, padding=(0, 1), header_style=TERMINAL["head"])
+    table = Table(
+        box=box.SIMPLE_HEAD, pad_edge=False, padding=(0, PADDING - 1, 0, 0), header_style=TERMINAL["head"]
+    )
     for column in columns:
         # A head as wide as its column allows wraps at spaces; only a longer word is cut in pieces.
         table.add_column(
             Text(column.head, style=TERMINAL["head"]),
             justify="right" if column.right else "left",
-            max_width=column.widest,
+            max_width=column.width,
             min_width=min(column.width, 6),
             overflow="fold",
         )
     for row in range(len(columns[0].cells)):
-        cells = [_cell(column.cells[row]) for column in columns]
+        cells = [_cell(column.lined_up[row]) for column in columns]
         table.add_row(*cells, end_section=row in sections)
     return table
 

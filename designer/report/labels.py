@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
+from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
 
 from designer.report.style import FONT_SMALL, PAPER, QUIET
@@ -52,7 +53,7 @@ def column(
     bold: Sequence[bool],
 ) -> list[Text]:
     """Write labels in a column right of the axes, each joined by a thin line to its height (data units)."""
-    figure = ax.get_figure(root=True)
+    figure = _figure(ax)
     if figure is None or not texts:
         return []
     tall = ax.get_position().height * figure.get_figheight() * POINTS_PER_INCH
@@ -95,7 +96,7 @@ def beside(ax: Axes, points: Sequence[tuple[float, float]], texts: Sequence[Text
     The first `keep` points have a text each; the rest are points that should stay visible too. Distances
     and directions are tried nearest first; where none is free, the one that hides least is taken.
     """
-    figure = ax.get_figure(root=True)
+    figure = _figure(ax)
     if figure is None:
         return
     renderer = figure.canvas.get_renderer()  # type: ignore[attr-defined]
@@ -117,9 +118,15 @@ def beside(ax: Axes, points: Sequence[tuple[float, float]], texts: Sequence[Text
         if best is None:
             continue
         taken.append(best[1])
-        text.set_position(ax.transData.inverted().transform((best[1].x0, best[1].y0)))
+        x, y = ax.transData.inverted().transform((best[1].x0, best[1].y0))
+        text.set_position((float(x), float(y)))
         text.set_horizontalalignment("left")
         text.set_verticalalignment("bottom")
+
+
+def _figure(ax: Axes) -> Figure | None:
+    figure = ax.get_figure()
+    return figure if isinstance(figure, Figure) else None
 
 
 def _box(point: np.ndarray, size: tuple[float, float], distance: float, angle: float) -> Bbox:
@@ -144,4 +151,4 @@ def _hidden(box: Bbox, pixels: np.ndarray, taken: Sequence[Bbox], inside: Bbox, 
         hidden += 0.0 if shared is None else 100.0 + float(shared.width * shared.height)
     outside = max(0.0, inside.x0 - box.x0) + max(0.0, box.x1 - inside.x1)
     outside += max(0.0, inside.y0 - box.y0) + max(0.0, box.y1 - inside.y1)
-    return hidden + outside * 10.0
+    return hidden + float(outside) * 10.0

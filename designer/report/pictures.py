@@ -1,4 +1,4 @@
-"""From a search's result to picture files: builds the data, draws, and writes each file whole or not at all."""
+"""From a search's result to picture files, each written whole or not at all."""
 
 from __future__ import annotations
 
@@ -16,8 +16,16 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
 
-from designer.brief.model import Brief
-from designer.report import build_arcs, build_front, build_reach, build_sensitivity, figures, style
+from designer.brief.model import Brief, Gap, Ledge
+from designer.report import (
+    build_arcs,
+    build_front,
+    build_reach,
+    build_sensitivity,
+    figures,
+    score_figures,
+    style,
+)
 from designer.report.arc_figure import arcs
 from designer.report.results import write_whole
 from designer.report.shown import best_of, pair, shown
@@ -94,7 +102,7 @@ def front_picture(result: SearchResult) -> Iterator[Picture]:
     if data is None:
         return
     figure = _figure(style.SIZE_WIDE)
-    figures.front(figure.add_axes((0.08, 0.12, 0.88, 0.72)), data)
+    score_figures.front(figure.add_axes((0.08, 0.12, 0.88, 0.72)), data)
     yield Picture("front", figure, build_front.front_alt(data))
 
 
@@ -149,14 +157,15 @@ def sensitivity_picture(brief: Brief, best: Candidate) -> Iterator[Picture]:
     count, rows = len(data.columns), len(data.labels)
     axes, figure = _grid(count, 2.15, 0.55 + 0.3 * rows, gap=(0.35, 0.0), columns=count)
     for index, (ax, (name, bars)) in enumerate(zip(axes, data.columns, strict=True)):
-        figures.sensitivity(ax, name, bars, data.limit, row_labels=index == 0)
-    figures.banner(axes[0], data.title, data.subtitle)
+        score_figures.sensitivity(ax, name, bars, data.limit, row_labels=index == 0)
+    score_figures.banner(axes[0], data.title, data.subtitle)
     yield Picture("sensitivity", figure, data.alt)
 
 
 def _label_room(brief: Brief) -> float:
     """Return the inches between two panels: the names of ledges and gaps, and the next panel's axis."""
-    names = [len(style.shorten(feature.name)) for feature in (*brief.ledges, *brief.gaps)]
+    features: list[Ledge | Gap] = [*brief.ledges, *brief.gaps]
+    names = [len(style.shorten(feature.name)) for feature in features]
     return 1.1 + 0.078 * max([18, *names])
 
 
@@ -201,4 +210,3 @@ def svg_bytes(picture: Picture, box: Bbox) -> bytes:
     if not found:
         raise RuntimeError("the SVG writer produced no <svg> element")
     return text.encode()
-

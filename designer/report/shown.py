@@ -51,6 +51,8 @@ def pair(result: SearchResult, best: Candidate) -> list[Shown]:
     """Return today, where there is one, and the best."""
     rows = shown(result)
     proposed = [one for one in rows if one.verdict is best.verdict or one.verdict == best.verdict]
-    best_shown = proposed[-1] if proposed else Shown(best.label or NEAREST, style.candidate_look(0), best.verdict)
+    best_shown = (
+        proposed[-1] if proposed else Shown(best.label or NEAREST, style.candidate_look(0), best.verdict)
+    )
     today = [one for one in rows if one.name == "today" and one is not best_shown]
     return [*today, best_shown]

@@ -1,15 +1,16 @@
 """The one place for colours, dashes, markers, fonts and sizes of every picture.
 
-The six candidate colours were found by a random search that maximises the smallest distance (CIE 1976 L*a*b*)
-between any two of them and today's grey, seen normally and through the protan, deutan and tritan matrices of
-Machado, Oliveira & Fernandes (IEEE Trans. Vis. Comput. Graph. 15(6), 2009), with lightness held to steps of
-about 8 so that grey print keeps them apart and with a contrast of at least 3 : 1 against white. A test repeats
-that measurement. Every colour comes with a dash and a marker as the second cue.
+The six candidate colours were found by a random search that maximises the smallest distance (CIE 1976
+L*a*b*) between any two of them and today's grey, seen normally and through the protan, deutan and tritan
+matrices of Machado, Oliveira & Fernandes (IEEE Trans. Vis. Comput. Graph. 15(6), 2009), with lightness held
+to steps of about 8 so that grey print keeps them apart. A test repeats that measurement. Every
+colour comes with a dash and a marker as the second cue.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 INK = "#1b1b1f"
 """Text and axes."""
@@ -86,7 +87,7 @@ BROUGHT_LOOKS = (
 )
 """Sets that people bring ([[sets]]): greys, since only proposals have a colour."""
 
-RC = {
+RC: dict[Any, Any] = {
     "font.family": ["DejaVu Sans"],
     "font.size": FONT,
     "text.color": INK,

@@ -26,13 +26,13 @@ NO_VALUE = "–"
 
 
 def number(value: float | None, digits: int = 10) -> str:
-    """Return a number as short as it can be said, without an exponent for everyday sizes: "1462.5", "0.125"."""
+    """Return a number as short as can be, without an exponent for everyday sizes: "1462.5", "0.125"."""
     if value is None or math.isnan(value):
         return NO_VALUE
     if math.isinf(value):
         return "none"
     text = f"{value:.{digits}g}"
-    if "e" in text and 1e-6 < abs(value) < 1e15:
+    if "e" in text and 1e-9 < abs(value) < 1e15:
         decimals = max(0, digits - 1 - math.floor(math.log10(abs(value))))
         text = f"{value:.{decimals}f}"
         text = text.rstrip("0").rstrip(".") if "." in text else text
@@ -93,7 +93,7 @@ def _move_line(rule: Rule, moved: str) -> str:
 
 
 def _landing_lines(rule: Rule) -> list[str]:
-    tolerance = f"{rule.contact_tolerance:g}"
+    tolerance = _plain(rule.contact_tolerance)
     lines = [f"landed when y <= {tolerance} and y is lower than a step ago"]
     if rule.landing_test is LandingTest.SWEPT:
         lines.append("the landing counts where that step's segment crosses 0")
@@ -103,7 +103,7 @@ def _landing_lines(rule: Rule) -> list[str]:
 
 
 def pseudo_code(brief: Brief, rule: Rule, constants: Constants) -> list[str]:
-    """Return the update rule with these constants as a few lines of pseudo-code, only with the parts in use."""
+    """Return the update rule as a few lines of pseudo-code with these constants, only the parts in use."""
     rounded = constants.grain > 0.0
     carry = rounded and rule.rounding.carry
     start = f"y = 0; v = {_plain(constants.launch_speed)}" + ("; e = 0" if carry else "")

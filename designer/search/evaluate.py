@@ -10,8 +10,9 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from designer.brief.model import Brief
+from designer.motion.closed_form import has_closed_form
+from designer.motion.jumps import LONGEST_FLIGHT
 from designer.motion.rule import SEARCHABLE
-from designer.motion.simulate import PLAIN_STEPS
 from designer.objective.modules import ObjectiveModule
 from designer.objective.score import Scores, score
 from designer.objective.table import Designs, design_tables
@@ -22,6 +23,10 @@ if TYPE_CHECKING:
 
     Floats = NDArray[np.float64]
 
+WORTH_COMPILING = 500_000
+"""Steps in all above which stepping is compiled."""
+DOUBTFUL = 0.04
+"""The share of jumps that the closed form hands back to be stepped (ties and the like)."""
 INFEASIBLE = 1e6
 """What `penalised` adds to designs that land but break a ledge or gap."""
 DIGITS = 4
@@ -104,9 +109,10 @@ class Evaluator:
 
     def _compiled(self, designs: Designs) -> bool | None:
         """Batches look small one by one; compile where the whole is not."""
-        flight = 2.0 * np.mean(designs.launch_speed / designs.gravity)
-        steps = sum(flight / rate.step for rate in self.brief.rates.supported)
-        return True if self.expected * steps > PLAIN_STEPS else None
+        share = np.where(has_closed_form(self.brief.rule, designs.grain), DOUBTFUL, 1.0)
+        flight = np.minimum(2.0 * designs.launch_speed / designs.gravity, LONGEST_FLIGHT)
+        rates = sum(1.0 / rate.step for rate in self.brief.rates.supported)
+        return True if self.expected * rates * float(np.mean(share * flight)) > WORTH_COMPILING else None
 
     def everything(self) -> tuple[Floats, Scores]:
         """Return all designs, ascending in the order that decides between equals, with scores."""

@@ -14,8 +14,8 @@ from designer.objective.table import Designs
 from designer.search.conflict import failing_patterns, find_clashes, least_sums
 from designer.search.evaluate import Evaluator, designs_of, pick
 from designer.search.progress import Progress
-from designer.search.ranking import Leaders, absorb, rows_of
-from designer.search.refine import GENERATIONS, POPULATION, STARTS, refine
+from designer.search.ranking import Leaders, Rows, absorb, join, rows_of
+from designer.search.refine import GENERATIONS, POPULATION, STARTS, TIDIER, refine
 from designer.search.result import Certificate, Clash
 from designer.search.scan import cells_of, least_shortfalls, only_numbers, scan
 from designer.search.space import Space
@@ -69,7 +69,7 @@ def by_study(
     progress: Progress,
 ) -> Found:
     """Let Optuna search and SciPy refine; all designs that they tried are ranked like a scan's."""
-    expected = trials + STARTS * POPULATION * GENERATIONS
+    expected = trials + STARTS * (POPULATION * GENERATIONS + TIDIER)
     evaluator = Evaluator(brief, space, objectives, workers, expected)
     said = run_study(evaluator, seed=seed, trials=trials, progress=progress)
     chosen, refined = refine(evaluator, seed=seed, progress=progress)
@@ -83,8 +83,9 @@ def by_study(
     numbers = only_numbers(brief, designs)
     rows = rows_of(pick(scores, keep), np.flatnonzero(keep), numbers, cells_of(designs))
     leaders = absorb(Leaders(), rows)
-    if not space.is_grid and len(leaders.feasible):
-        leaders = _lead(leaders, chosen)
+    leading = rows.take((rows.index == chosen) & rows.feasible)
+    if len(leading) and not space.is_grid:
+        leaders = _led_by(leaders, leading)
     clashes: tuple[Clash, ...] = ()
     if not len(leaders.feasible):
         clashes = find_clashes(
@@ -101,9 +102,12 @@ def by_study(
     )
 
 
-def _lead(leaders: Leaders, chosen: int) -> Leaders:
-    """Put the tidy proposal first among designs of exactly its cost."""
-    rows = leaders.feasible
-    if len(rows) == 2 and rows.index[1] == chosen and rows.cost[0] == rows.cost[1]:
-        return replace(leaders, feasible=rows.take(np.array([1, 0])))
-    return leaders
+def _led_by(leaders: Leaders, leading: Rows) -> Leaders:
+    """Put the tidy proposal before designs that equal it (with a run speed that nothing asks about, say)."""
+    others = leaders.feasible.take(leaders.feasible.index != leading.index[0])
+    changes = {"feasible": join([leading, others]).take(slice(0, 2))}
+    if leading.numbers[0] and leading.cost[0] <= leaders.numbers.cost[0]:
+        changes["numbers"] = leading
+    if leading.on_target[0] and leading.spread[0] <= leaders.steady.spread[0]:
+        changes["steady"] = leading
+    return replace(leaders, **changes)

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from designer.brief.model import Brief, Loop
+from designer.motion.closed_form import has_closed_form
 from designer.motion.rule import Constants
 from designer.objective.judge import judge
 from designer.objective.modules import ObjectiveModule
@@ -68,8 +69,14 @@ class _Proposals:
         if (constants, True) in self._judged:
             return self._judged[constants, True]
         if (constants, bands) not in self._judged:
+            # Bands take hundreds of rates a candidate: in plain Python that would be the longest part.
+            steps_all = not bool(np.all(has_closed_form(self.brief.rule, np.array([constants.grain]))))
             self._judged[constants, bands] = judge(
-                self.brief, constants, bands=bands, objectives=self.objectives
+                self.brief,
+                constants,
+                bands=bands,
+                compiled=True if steps_all and bands else None,
+                objectives=self.objectives,
             )
         return self._judged[constants, bands]
 
@@ -93,7 +100,7 @@ class _Proposals:
         _, first = np.unique(rows.index, return_index=True)
         rows = rows.take(first)  # ascending in index from here on
         designs = self.found.designs(rows.index)
-        options = Options(self._looks(designs), rows.miss, rows.spread, rows.cost)
+        options = Options(self._looks(designs), rows.miss, rows.spread, rows.cost, rows.on_target)
 
         def places(part: Rows) -> NDArray[np.int64]:
             return np.asarray(np.searchsorted(rows.index, part.index), dtype=np.int64)
@@ -123,7 +130,9 @@ class _Proposals:
         if pick.reason == "front":
             parts.append(trade(options, one, best))
         elif pick.reason == "different":
-            parts.append("different and nearly as good")
+            parts.append(
+                "different and on target" if options.on_target[one] else "different and nearly as good"
+            )
         why = " and ".join(parts)
         if one != best:
             why += f": {against(options, one, best)}"

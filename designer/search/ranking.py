@@ -51,8 +51,8 @@ class Rows:
     def __len__(self) -> int:
         return len(self.index)
 
-    def take(self, which: Mask | Ints) -> Rows:
-        """Return the designs that a mask or an index array picks."""
+    def take(self, which: Mask | Ints | slice) -> Rows:
+        """Return the designs that a mask or an index array or a slice picks."""
         return Rows(*(getattr(self, part.name)[which] for part in fields(self)))
 
     @property

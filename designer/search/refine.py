@@ -23,9 +23,11 @@ POPULATION = 32
 GENERATIONS = 30
 BOX = 0.08
 """Half the width of the box in which a start is refined, as a share of each axis."""
-PRICE = 0.01
-"""Tidier numbers may cost this share more."""
+PRICE, PRICE_IN_TOLERANCES = 0.01, 0.05
+"""Tidier numbers may cost this share more, or this much, whichever is more."""
 MOST_COMBINATIONS = 4096
+TIDIER = 500
+"""About so many tidier neighbours a start has."""
 
 
 def best_rows(matrix: Floats, ranks: Floats, count: int) -> list[int]:
@@ -117,9 +119,9 @@ def _try_tidier(evaluator: Evaluator, row: Floats) -> None:
 
 
 def _nearly(ranks: Floats) -> NDArray[np.bool_]:
-    """Return which designs cost at most PRICE more than the best; where none is feasible, only the best."""
+    """Return which designs cost hardly more than the best; where none is feasible, only the best."""
     best = float(np.min(ranks))
-    return np.asarray(ranks <= (best * (1.0 + PRICE) + 1e-9 if best < INFEASIBLE else best))
+    return np.asarray(ranks <= (best + max(PRICE * best, PRICE_IN_TOLERANCES) if best < INFEASIBLE else best))
 
 
 def figures_of(evaluator: Evaluator, matrix: Floats) -> NDArray[np.int64]:
@@ -129,7 +131,7 @@ def figures_of(evaluator: Evaluator, matrix: Floats) -> NDArray[np.int64]:
 
 
 def tidiest(evaluator: Evaluator, matrix: Floats, ranks: Floats) -> int:
-    """Return the design with the fewest figures among those that cost at most PRICE more than the best."""
+    """Return the design with the fewest figures among those that cost hardly more than the best."""
     near = np.flatnonzero(_nearly(ranks))
     order = np.lexsort((near, ranks[near], figures_of(evaluator, matrix[near])))
     return int(near[order[0]])
@@ -174,6 +176,6 @@ def refine(evaluator: Evaluator, *, seed: int, progress: Progress | None = None)
         text += (
             f"; tidied to {_say(matrix[chosen])} at cost {ranks[chosen]:.4g}"
             if chosen != best
-            else "; no tidier numbers come within one percent of the best"
+            else "; no tidier numbers cost as little"
         )
     return chosen, text + "."

@@ -17,13 +17,14 @@ from typing import TYPE_CHECKING, TypeVar
 import numpy as np
 
 from designer.brief.model import Brief, Loop
+from designer.motion.batch import fly_many
 from designer.motion.closed_form import has_closed_form
 from designer.motion.jumps import LONGEST_FLIGHT
 from designer.motion.rule import SEARCHABLE
-from designer.motion.simulate import PLAIN_STEPS
 from designer.objective.score import Scores, score
-from designer.objective.table import Designs, JumpTable, extremes, kinematics, scalars
+from designer.objective.table import Designs, Fly, JumpTable, extremes, kinematics, scalars
 from designer.search.conflict import failing_patterns, least_sums
+from designer.search.evaluate import DOUBTFUL, WORTH_COMPILING
 from designer.search.progress import Progress, Silent
 from designer.search.ranking import NO_ROWS, Leaders, Rows, absorb, cells, contenders, join, rows_of
 from designer.search.result import Certificate, RunnerUp
@@ -41,8 +42,6 @@ MOTION = ("gravity", "launch_speed", "grain", "fall_factor", "terminal_speed")
 """What decides a flight at a given step."""
 BLOCK_JUMPS = 200_000
 """Jumps flown at a time: small enough for the caches, large enough for NumPy."""
-DOUBTFUL = 0.04
-"""The share of jumps on a tidy grid that the closed form hands back to be stepped (ties and the like)."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -108,7 +107,9 @@ class Batch:
     """Designs with the same cell look alike to a designer."""
 
 
-def batches(brief: Brief, layout: Plan, start: int, compiled: bool | None = None) -> Iterator[Batch]:
+def batches(
+    brief: Brief, layout: Plan, start: int, compiled: bool | None = None, fly: Fly = fly_many
+) -> Iterator[Batch]:
     """Fly one block and yield its designs, a batch for each nominal step and run speed."""
     space = layout.space
     stop = min(start + layout.block_starts().step, layout.flights)
@@ -117,7 +118,7 @@ def batches(brief: Brief, layout: Plan, start: int, compiled: bool | None = None
     still = np.zeros(count, dtype=np.intp)
     chosen = {name: values(space.axis(name))[at.get(name, still)] for name in SEARCHABLE}
     flown = Designs(**chosen)
-    kin = kinematics(brief, flown.launches(layout.steps), compiled=compiled)
+    kin = kinematics(brief, flown.launches(layout.steps), compiled=compiled, fly=fly)
     steps, runs = values(space.axis("step")), values(space.axis("run_speed"))
     for j, run in enumerate(runs):
         cell = cells_of(replace(flown, run_speed=np.full(count, run)))
@@ -183,17 +184,27 @@ class Scan:
     """Which features fail together, as bits, in designs that land; told only where nothing is feasible."""
 
 
-def scan(brief: Brief, space: Space, *, workers: int = 1, progress: Progress | None = None) -> Scan:
-    """Score every design of a grid; neither the number of workers nor their pace changes the result."""
+def scan(
+    brief: Brief,
+    space: Space,
+    *,
+    workers: int = 1,
+    progress: Progress | None = None,
+    fly: Fly = fly_many,
+) -> Scan:
+    """Score every design of a grid; neither the number of workers nor their pace changes the result.
+
+    `fly` measures the jumps; the stepper in its place gives a scan without closed form, to compare.
+    """
     layout = plan(brief, space)
     leaders = Leaders()
     # Block by block the work looks small; what counts is the whole.
-    compiled = True if steps_to_simulate(brief, layout) > PLAIN_STEPS else None
+    compiled = True if steps_to_simulate(brief, layout) > WORTH_COMPILING else None
 
     def work(start: int) -> tuple[int, Rows, set[int]]:
         so_far, kept, count = leaders, [NO_ROWS], 0
         patterns: set[int] = set()
-        for batch in batches(brief, layout, start, compiled):
+        for batch in batches(brief, layout, start, compiled, fly):
             rows = rows_of(batch.scores, batch.index, only_numbers(brief, batch.designs), batch.cell)
             kept.append(contenders(so_far, rows))
             count += len(rows)
@@ -225,7 +236,7 @@ def least_shortfalls(
 ) -> list[float]:
     """Return for each set of features the least sum of shortfalls that any design reaches, length."""
     layout = plan(brief, space)
-    compiled = True if steps_to_simulate(brief, layout) > PLAIN_STEPS else None
+    compiled = True if steps_to_simulate(brief, layout) > WORTH_COMPILING else None
 
     def work(start: int) -> list[float]:
         found = [

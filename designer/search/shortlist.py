@@ -20,7 +20,7 @@ NOTICED = 0.05
 """Relative difference above which two designs count as different."""
 FEWEST, FILLED, MOST = 3, 4, 6
 """Fewer than FEWEST candidates are excused in a note; designs beside the front fill up to FILLED only."""
-LEAST_GAIN = 0.01
+LEAST_GAIN = 0.03
 """A member of the front is worth a place if it adds this share to the hypervolume."""
 
 
@@ -32,6 +32,8 @@ class Options:
     miss: Floats
     spread: Floats
     cost: Floats
+    on_target: NDArray[np.bool_]
+    """Whether nothing is beyond its tolerance."""
 
 
 @dataclass(frozen=True, slots=True)

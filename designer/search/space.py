@@ -43,6 +43,8 @@ class Axis:
             return min(max(value, self.low), self.high)
         if math.isnan(value):
             return self.points[0]
+        if math.isinf(value):
+            return self.points[-1]
         return min(self.points, key=lambda point: (0.0 if point == value else abs(point - value), point))
 
 

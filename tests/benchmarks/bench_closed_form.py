@@ -1,9 +1,9 @@
 """Cost of one jump: closed form, compiled kernel and plain kernel in one run. A script, not a test.
 
-    python tests/benchmarks/bench_closed_form.py [--workers N]
+    python tests/benchmarks/bench_closed_form.py [--times N]
 
-Prints ns a jump (the least CPU time of several runs) and how many times the closed form's cost that is. The grid
-is 361 gravities by 101 launch speeds by 8 steps; the kernels fly a part of it.
+Prints ns a jump (the least CPU time of several runs) and how many times the closed form's cost that is. The
+grid is 361 gravities by 101 launch speeds by 8 steps; the kernels fly a part of it.
 """
 
 from __future__ import annotations
@@ -46,15 +46,19 @@ CASES = (
     Case("… end-of-step landing", Rule(Integrator.AVERAGE, landing_test=LandingTest.END_OF_STEP)),
     Case("… no gravity in the first step", Rule(Integrator.AVERAGE, launch_gravity=False)),
     Case("… falls at 1.5", Rule(Integrator.AVERAGE), fall_factor=1.5),
-    Case("… falls at 1.5, terminal speed 300", Rule(Integrator.AVERAGE), fall_factor=1.5, terminal_speed=300.0),
+    Case(
+        "… falls at 1.5, terminal speed 300", Rule(Integrator.AVERAGE), fall_factor=1.5, terminal_speed=300.0
+    ),
     Case("average, grain 1 toward zero", Rule(Integrator.AVERAGE, Rounding(Mode.TOWARD_ZERO))),
     Case("average, grain 0.1 (no closed form)", Rule(Integrator.AVERAGE), grain=0.1),
 )
 
 
 def grid(case: Case, every: int) -> Launches:
-    """Return every so-manieth gravity and launch speed at all steps: arrays (designs, 1) and (steps,)."""
-    gravity, speed = np.meshgrid(np.arange(200.0, 2001.0, 5.0)[::every], np.arange(100.0, 601.0, 5.0)[::every])
+    """Return every n-th gravity and launch speed at all steps: arrays (designs, 1) and (steps,)."""
+    gravity, speed = np.meshgrid(
+        np.arange(200.0, 2001.0, 5.0)[::every], np.arange(100.0, 601.0, 5.0)[::every]
+    )
     single = (case.grain, case.fall_factor, case.terminal_speed)
     columns = (gravity.reshape(-1, 1), speed.reshape(-1, 1), np.array(STEPS_MS) / 1000.0)
     return Launches(*columns, *(np.asarray(x) for x in single))
@@ -73,9 +77,9 @@ def nanoseconds(work: Callable[[], object], jumps: int, times: int) -> float:
 
 def main() -> None:
     """Print one line a case."""
-    times = argparse.ArgumentParser(description=__doc__.splitlines()[0])
-    times.add_argument("--times", type=int, default=5, help="runs of which the quickest counts (default 5)")
-    count = times.parse_args().times
+    options = argparse.ArgumentParser(description=__doc__.splitlines()[0])
+    options.add_argument("--times", type=int, default=5, help="runs of which the quickest counts (default 5)")
+    count = options.parse_args().times
     print(f"{'':42} {'closed form':>16} {'compiled kernel':>20} {'plain kernel':>20}")
     for case in CASES:
         whole, part, few = grid(case, 1), grid(case, 5), grid(case, 40)

@@ -63,7 +63,7 @@ def test_both_times_at_a_height() -> None:
 
 
 def test_inverse_of_the_worked_examples() -> None:
-    """University Physics vol. 1, 3.5 (caught after 5.0 s; clears 2.50 m) and 4.3 (range 90 m); College Physics 2.7."""
+    """University Physics vol. 1, 3.5 (caught after 5.0 s; clears 2.50 m), 4.3 (90 m); College Physics 2.7."""
     gravity, speed = constants_for(30.625, 5.0)
     assert (float(gravity), float(speed)) == pytest.approx((9.80, 24.5), abs=WITHIN)
     assert float(launch_speed_for(9.80, 2.50)) == pytest.approx(7.0, abs=WITHIN)
@@ -110,11 +110,15 @@ def test_body_is_at_the_level_when_it_lands(
         assert np.isnan(continuous_landing_velocity(gravity, speed, level, factor))
         return
     scale = abs(level) + float(continuous_apex(gravity, speed)) + abs(speed) * abs(airtime)
-    assert float(continuous_height(gravity, speed, airtime, factor)) == pytest.approx(level, abs=1e-9 * scale + 1e-12)
+    assert float(continuous_height(gravity, speed, airtime, factor)) == pytest.approx(
+        level, abs=1e-9 * scale + 1e-12
+    )
     landing = float(continuous_landing_velocity(gravity, speed, level, factor))
     assert landing <= 0.0
     fastest = abs(speed) + gravity * max(factor, 1.0) * abs(airtime)
-    assert float(continuous_velocity(gravity, speed, airtime, factor)) == pytest.approx(landing, abs=1e-6 * fastest)
+    assert float(continuous_velocity(gravity, speed, airtime, factor)) == pytest.approx(
+        landing, abs=1e-6 * fastest
+    )
 
 
 def test_arrays_broadcast() -> None:

@@ -1,4 +1,4 @@
-"""What a grain does to gravity: margins, flips and aligned gravities, against stepping and printed figures."""
+"""What a grain does to gravity: margins, flips, aligned gravities, against stepping and printed figures."""
 
 from __future__ import annotations
 
@@ -56,7 +56,7 @@ def test_effective_gravity_is_what_stepping_does(mode: Mode, falling: bool) -> N
 @pytest.mark.parametrize("mode", ["nearest-even", "nearest-away", "nearest-up"])
 @pytest.mark.parametrize("falling", [False, True])
 def test_effective_gravity_at_a_tie(gravity: float, mode: str, falling: bool) -> None:
-    """δ = 6.5, 5.5 and 1.5 at 8 ms: CHECKS' table of ties (computed), to even after one step."""
+    """δ = 6.5, 5.5 and 1.5 at 8 ms: computed, to even after one step."""
     rule = rule_of(mode)
     assert bool(is_tie(rule, gravity, 1.0, 0.008))
     low = math.floor(gravity * 0.008)
@@ -123,7 +123,9 @@ def test_flip_margin_is_the_distance_to_the_nearest_flip(mode: Mode) -> None:
     flips = flip_gravities(rule, 0.5, EIGHT, 1.0, 4000.0, fall_factor=1.5)
     for gravity in (333.0, 801.0, 1617.0, 2500.5):
         nearest = np.min(np.abs(flips - gravity))
-        assert float(flip_margin(rule, gravity, 0.5, 1.5, EIGHT)) == pytest.approx(nearest, rel=1e-9, abs=1e-9)
+        assert float(flip_margin(rule, gravity, 0.5, 1.5, EIGHT)) == pytest.approx(
+            nearest, rel=1e-9, abs=1e-9
+        )
         near = flips_near(rule, gravity, 0.5, 0.008, 4)
         alone = flip_gravities(rule, 0.5, [0.008], 1.0, 4000.0)
         expected = np.sort(np.abs(alone - gravity))[:4]
@@ -145,7 +147,7 @@ def test_effective_gravity_changes_at_flips_and_nowhere_else(mode: Mode) -> None
 
 
 def test_flips_are_counted_once() -> None:
-    """17 steps and five grains: 4,243 cells of gravity in all (computed for SEARCH, 3)."""
+    """17 steps and five grains: 4,243 cells of gravity in all (counted by stepping)."""
     ms = sorted({*range(1, 9), 10, 12, 16, 20, 25, 33} | {3, 4, 7, 8, 11, 14, 17, 33})
     steps = [m / 1000.0 for m in ms]
     assert len(steps) == 17
@@ -164,13 +166,13 @@ def test_flips_are_counted_once() -> None:
 
 
 def test_aligned_gravities_of_whole_milliseconds() -> None:
-    """SEARCH, 4: steps of 3 … 33 ms: 125, 250, … at an eighth; 1000 and 2000 at one."""
+    """Computed: steps of 3 … 33 ms: 125, 250, … at an eighth; 1000 and 2000 at one."""
     assert aligned_gravities(rule_of(), 0.125, EIGHT, 100.0, 600.0).tolist() == [125.0, 250.0, 375.0, 500.0]
     assert aligned_gravities(rule_of(), 1.0, EIGHT, 200.0, 2000.0).tolist() == [1000.0, 2000.0]
 
 
 def test_aligned_gravities_of_whole_rates() -> None:
-    """SEARCH, 4: 60, 72, 90, 120 and 144 Hz: q·lcm = 720 at one, 90 at an eighth."""
+    """Computed: 60, 72, 90, 120 and 144 Hz: q·lcm = 720 at one, 90 at an eighth."""
     steps = [1 / rate for rate in (60, 72, 90, 120, 144)]
     assert aligned_gravities(rule_of(), 1.0, steps, 100.0, 1500.0).tolist() == [720.0, 1440.0]
     assert aligned_gravities(rule_of(), 0.125, steps, 80.0, 300.0).tolist() == [90.0, 180.0, 270.0]

@@ -201,11 +201,16 @@ def test_workers_and_compiling_change_nothing() -> None:
 def test_large_work_is_compiled_and_small_is_not(monkeypatch: pytest.MonkeyPatch) -> None:
     asked = []
     monkeypatch.setattr(kernel, "compiled", lambda: asked.append(1) or kernel.fly_each)
+    monkeypatch.setattr(kernel, "is_compiled", lambda: False)
     simulate(rule(), launches(800.0, 270.0, MS, 1.0))
     assert not asked
     monkeypatch.setattr("designer.motion.simulate.PLAIN_STEPS", 1000)
     simulate(rule(), launches(800.0, 270.0, MS, 1.0))
-    assert asked
+    assert len(asked) == 1
+    monkeypatch.setattr("designer.motion.simulate.PLAIN_STEPS", 1_000_000)
+    monkeypatch.setattr(kernel, "is_compiled", lambda: True)  # it is paid for: then small work uses it too
+    simulate(rule(), launches(800.0, 270.0, MS, 1.0))
+    assert len(asked) == 2
 
 
 def test_small_work_does_not_load_numba() -> None:

@@ -1,4 +1,4 @@
-"""Invented briefs, verdicts and results for tests of what is shown: consistent with themselves, nobody's game."""
+"""Invented briefs, verdicts and results for tests of what is shown: consistent, and nobody's game."""
 
 from __future__ import annotations
 
@@ -160,7 +160,9 @@ def stuck(brief: Brief, constants: Constants) -> Verdict:
         spreads=dict.fromkeys(base.jumps[0].spreads),
         targets=tuple(TargetVerdict(t.target, None, None, None) for t in base.jumps[0].targets),
     )
-    lost = [replace(f, holds=False, spare=None, worst_rate=None, failing=("20–1000 Hz",)) for f in base.ledges]
+    lost = [
+        replace(f, holds=False, spare=None, worst_rate=None, failing=("20–1000 Hz",)) for f in base.ledges
+    ]
     gaps = [replace(f, holds=False, spare=None, worst_rate=None, failing=("20–1000 Hz",)) for f in base.gaps]
     return replace(
         base,
@@ -199,7 +201,9 @@ def result(brief: Brief, count: int = 3, *, with_sets: bool = False) -> SearchRe
     """A search's result with `count` candidates."""
     today = verdict(brief, TODAY, "a1b2", (1.6, -3.7), ((), ("201–250 Hz", "334–360 Hz")))
     shortlist = tuple(
-        Candidate("ABCDEF"[i], REASONS[i], "numbers" if c.grain == 1 else "code", verdict(brief, c, f"m{i}x{i}"))
+        Candidate(
+            "ABCDEF"[i], REASONS[i], "numbers" if c.grain == 1 else "code", verdict(brief, c, f"m{i}x{i}")
+        )
         for i, c in enumerate(PROPOSED[:count])
     )
     sets = tuple(
@@ -227,7 +231,9 @@ def clashing(brief: Brief) -> SearchResult:
     """A search that found nothing feasible."""
     near = verdict(brief, PROPOSED[0], "n0ne", (-1.0, -0.5), (("20–1000 Hz",), ("201–250 Hz",)))
     text = "at least 120.0 and at most 119.0 cannot both hold: short by 1.0, about 4.8 over the rates"
-    clash = Clash(("reach awning: apex at least 120.0", "stay out of billboard: apex at most 119.0"), 1.0, 4.8, text)
+    clash = Clash(
+        ("reach awning: apex at least 120.0", "stay out of billboard: apex at most 119.0"), 1.0, 4.8, text
+    )
     return replace(
         result(brief, 1),
         best=None,

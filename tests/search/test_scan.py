@@ -10,6 +10,7 @@ import pytest
 import designer.search.scan as scanning
 from designer.brief.model import Brief, Choice, Gap, Ledge, Loop, Rate, Target
 from designer.motion.rule import Constants, Rounding, Rule
+from designer.motion.simulate import simulate
 from designer.search.scan import scan
 from designer.search.space import build_space
 from tests.reference.make import brief_of
@@ -169,7 +170,7 @@ def test_blocks_and_workers_change_nothing(name: str, monkeypatch: pytest.Monkey
 
 
 def test_equals_are_decided_by_the_constants() -> None:
-    """With a coarse grain before the move, gravities of one rounding cell are equal: the lowest is proposed."""
+    """With a coarse grain before the move, gravities of one rounding cell are equal: the lowest leads."""
     brief = fixed_loop(
         Rule("average", Rounding(at="before-move")),
         {
@@ -225,3 +226,20 @@ def test_loop_of_each_frame_has_no_step() -> None:
     space = build_space(brief)
     assert np.isnan(space.designs(np.array([0])).step).all()
     assert space.designs(np.array([0])).constants(0, brief).step is None
+
+
+@pytest.mark.parametrize(
+    "name", ["semi-implicit, before the move", "explicit toward zero, heavy fall, terminal speed"]
+)
+def test_stepping_every_jump_finds_the_same(name: str) -> None:
+    brief = BRIEFS[name]
+    space = build_space(brief)
+
+    def fly(*given: object, count_near_apex: bool = False, **options: object) -> object:
+        return simulate(*given, **options)  # type: ignore[arg-type]
+
+    closed, stepped = scan(brief, space), scan(brief, space, fly=fly)  # type: ignore[arg-type]
+    assert closed.leaders.front.index.tolist() == stepped.leaders.front.index.tolist()
+    assert closed.leaders.ranked.cost.tolist() == pytest.approx(
+        stepped.leaders.ranked.cost.tolist(), rel=1e-8
+    )
