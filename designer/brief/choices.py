@@ -77,6 +77,8 @@ class Reader:
         if isinstance(value, list):
             inside = ", ".join(_as_written(item) for item in value)
             raise Misread(self._allowed(name), better=f"{{ among = [{inside}] }}")
+        if isinstance(value, str) and value[:1].isalpha() and value != "none":
+            raise Misread(self._allowed(name), fix="write one of these")
         if not isinstance(value, dict):
             return Choice((self.constant(name, value),), text=_bare(value))
         if "among" in value:

@@ -18,6 +18,9 @@ from designer.errors import Fault, InputError
 LARGEST_FILE = 1_000_000
 """Bytes; a brief is a few kilobytes, so a larger file is something else."""
 
+MOST_KEYS = 20_000
+"""Keys and list entries; a list may be long, but a range says it better."""
+
 _START = "leapwright new FILE writes a brief to start from"
 
 
@@ -36,22 +39,33 @@ def parse_brief(text: str, file_name: str) -> Brief:
     text = text.removeprefix("\ufeff").replace("\r\n", "\n").replace("\r", "\n")
     if not any(line.strip() and not line.lstrip().startswith("#") for line in text.split("\n")):
         raise InputError(Fault(file_name, "", "", "a brief in TOML; this file is empty", _START))
-    raw, slips, text = _load(text, file_name)
-    if raw is None:
-        raise InputError(*slips)
+    try:
+        raw, slips, text = _load(text, file_name)
+        if raw is None:
+            raise InputError(*slips)
+        places = lines.Places(text)
+    except RecursionError:
+        words, fix = "tables and lists a few levels deep", "take out the brackets within brackets"
+        raise InputError(Fault(file_name, "", "", words, fix)) from None
+    if len(places.spots) > MOST_KEYS:
+        words = f"a brief of at most {MOST_KEYS} keys and list entries; this file has {len(places.spots)}"
+        raise InputError(Fault(file_name, "", "", words, "write ranges instead of long lists"))
     builder = Builder(raw, Path(file_name).stem)
     brief = builder.build()
-    faults = slips + _faults(builder.wrong, lines.Places(text), file_name)
-    # A correction may have repeated what it found: on such a line the same advice once is enough.
-    corrected = {slip.place for slip in slips}
-    advice = {
-        (f.place, f.allowed, f.fix) if f.place in corrected else (f.place, f.field, f.allowed): f
-        for f in reversed(faults)
-    }
-    faults = list(reversed(advice.values()))
+    faults = _without_echoes(slips, _faults(builder.wrong, places, file_name))
     if brief is None or faults:
         raise InputError(*faults)
     return brief
+
+
+def _without_echoes(slips: list[Fault], faults: list[Fault]) -> list[Fault]:
+    """Return all faults; on a line whose TOML was put right the same advice stands only once."""
+    corrected = {slip.place for slip in slips}
+    kept: dict[tuple[str, ...], Fault] = {}
+    for fault in (*slips, *faults):
+        on = (fault.fix,) if fault.place in corrected else (fault.field, fault.value, fault.fix)
+        kept.setdefault((fault.place, fault.allowed, *on), fault)
+    return list(kept.values())
 
 
 def _text_of(path: Path) -> str:
@@ -105,9 +119,6 @@ def _load(text: str, name: str) -> tuple[dict[str, Any] | None, list[Fault], str
     """Return the tables, the slips in the TOML, and the text that could be read in the end."""
     try:
         return tomllib.loads(text, parse_float=Decimal), [], text
-    except RecursionError:
-        words, fix = "tables and lists a few levels deep", "take out the brackets within brackets"
-        return None, [Fault(name, "", "", words, fix)], text
     except ValueError:
         slips, repaired = help_with(text, name)
     if repaired is None:
@@ -129,7 +140,7 @@ def _faults(wrong: Iterable[tuple[lines.Path, Misread]], places: lines.Places, n
         fault = Fault(place, dotted(path), " ".join(value.split()), misread.allowed, fix)
         numbered.append((near.line if near else float("inf"), fault))
     numbered.sort(key=lambda pair: pair[0])
-    return list(dict.fromkeys(fault for _, fault in numbered))
+    return [fault for _, fault in numbered]
 
 
 def dotted(path: lines.Path) -> str:

@@ -45,6 +45,10 @@ class Helper:
 
     def run(self) -> str | None:
         """Return a text that tomllib accepts, line for line; None where something stayed unclear."""
+        for index, line in enumerate(self.lines):
+            if len(line) > LONGEST_LINE:
+                self._add(index, "", line, f"lines of at most {LONGEST_LINE} signs", "write a key a line")
+                return None
         first = next(statements(self.lines))
         if self.lines[first.first].lstrip().startswith(("{", "<")):
             allowed = "TOML: [table] alone on a line, then key = value; this is written in another language"
@@ -56,10 +60,6 @@ class Helper:
                 "leapwright new FILE writes a brief to start from",
             )
             return None
-        for index, line in enumerate(self.lines):
-            if len(line) > LONGEST_LINE:
-                self._add(index, "", line, f"lines of at most {LONGEST_LINE} signs", "write a key a line")
-                return None
         table = ""
         for statement in statements(self.lines):
             if len(self.faults) >= MOST_FAULTS:

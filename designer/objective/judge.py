@@ -19,7 +19,16 @@ from designer.motion.simulate import simulate
 from designer.objective.bands import failing_bands, sweep_rates
 from designer.objective.flags import find_flags
 from designer.objective.modules import ObjectiveModule
-from designer.objective.score import NEGLIGIBLE, Scores, deviation, gap_spare, ledge_spare, score, spread_of
+from designer.objective.score import (
+    NEGLIGIBLE,
+    Scores,
+    deviation,
+    gap_spare,
+    ledge_spare,
+    nine_digits,
+    score,
+    spread_of,
+)
 from designer.objective.table import Designs, JumpTable, Kinematics, extremes, kinematics, scalars
 from designer.objective.verdict import FeatureVerdict, JumpVerdict, RateRow, TargetVerdict, Verdict, Worst
 
@@ -101,6 +110,11 @@ def _number(values: NDArray[np.float64]) -> float | None:
     return value if np.isfinite(value) else None
 
 
+def _nine(values: NDArray[np.float64]) -> float:
+    """Return the one deviation of an array to nine digits, so that 1.0000000000000009 is not beyond 1."""
+    return float(nine_digits(values)[0])
+
+
 def _rate_rows(
     brief: Brief,
     constants: Constants,
@@ -136,7 +150,7 @@ def _jump(jump: JumpBrief, table: JumpTable, constants: Constants, rows: tuple[R
     targets = []
     for target in jump.targets:
         measure = table.measures[target.measure]
-        d = _number(deviation(target, measure)) if lands else None
+        d = _nine(deviation(target, measure)) if lands else None
         if target.aim is not None:
             value = measure.nominal
         elif target.at_least is None or (d is not None and d > 0):
@@ -157,11 +171,11 @@ def _worst(
     """Return the largest |deviation| and where; None without targets or where the jump never lands."""
     if not lands:
         return None
-    found = [Worst(abs(float(d[0])), "objective", name) for name, d in terms.items()]
+    found = [Worst(abs(_nine(d)), "objective", name) for name, d in terms.items()]
     for jump, table in zip(brief.jumps, tables, strict=True):
         for target in jump.targets:
-            d = float(deviation(target, table.measures[target.measure])[0])
-            found.append(Worst(abs(d), jump.name, target.measure))
+            d = deviation(target, table.measures[target.measure])
+            found.append(Worst(abs(_nine(d)), jump.name, target.measure))
     return max(found, key=lambda one: one.value, default=None)
 
 

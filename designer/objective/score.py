@@ -34,7 +34,7 @@ class Scores:
     violation: Floats
     """Infinite where a jump never lands."""
     worst: Floats
-    """The largest |deviation|, in tolerances."""
+    """The largest |deviation|, in tolerances, to nine significant digits like the others."""
     shortfalls: Floats
     """(designs, features) in length units, ledges first, then gaps, each in the order of the brief."""
 
@@ -44,15 +44,19 @@ class Scores:
         return np.asarray(self.violation == 0.0)
 
 
+_POWERS = np.array([float(f"1e{k}") for k in range(301)])
+"""Powers of ten by exponent, each the nearest double: a power function may be off in its last bit."""
+
+
 def nine_digits(values: Floats) -> Floats:
     """Round to nine significant digits, so that noise in the last bits decides nothing."""
     values = np.asarray(values, dtype=np.float64)
     with np.errstate(divide="ignore", invalid="ignore"):
         exponent = np.floor(np.log10(np.abs(values)))
-    usual = np.isfinite(exponent) & (np.abs(exponent) < 200)
-    digits = np.where(usual, 8.0 - exponent, 0.0)
-    # Both branches keep the power of ten a whole number, hence exact up to 10^22.
-    up, down = 10.0 ** np.maximum(digits, 0.0), 10.0 ** np.maximum(-digits, 0.0)
+    usual = np.abs(exponent) < 200.0  # neither 0 nor infinite nor NaN
+    digits = np.where(usual, 8.0 - exponent, 0.0).astype(np.int64)
+    # Two whole powers of ten, one of them 1, both exact up to 10^22.
+    up, down = _POWERS[np.maximum(digits, 0)], _POWERS[np.maximum(-digits, 0)]
     with np.errstate(invalid="ignore"):
         rounded = np.rint(values * up / down) / up * down
     return np.where(usual, rounded, values)
@@ -171,6 +175,6 @@ def score(brief: Brief, tables: Sequence[JumpTable], extra_terms: Terms | None =
         rate_spread=nine_digits(np.where(lands, spread, np.nan)),
         cost=nine_digits(np.where(lands, cost, np.nan)),
         violation=nine_digits(np.where(lands, violation, np.inf)),
-        worst=np.where(lands, worst, np.nan),
+        worst=nine_digits(np.where(lands, worst, np.nan)),
         shortfalls=np.where(lands[:, None], shortfalls, np.inf),
     )

@@ -127,8 +127,15 @@ def at_level(measure: str, level: float) -> str:
 
 
 def fixed_lengths(brief: Brief) -> tuple[float, float]:
-    """Return step_up and edge_allowance, which no search varies."""
-    return (0.0, 0.0) if brief.base is None else (brief.base.step_up, brief.base.edge_allowance)
+    """Return step_up and edge_allowance, which no search varies: what [search] fixes, else [today]'s."""
+
+    def length(name: str) -> float:
+        choice = (brief.search or {}).get(name)
+        if choice is not None and choice.values is not None:
+            return choice.values[0]
+        return 0.0 if brief.base is None else float(getattr(brief.base, name))
+
+    return length("step_up"), length("edge_allowance")
 
 
 def measures_needed(brief: Brief) -> tuple[str, ...]:

@@ -220,11 +220,15 @@ def _reach_labels(ax: Axes, picture: ReachPicture) -> None:
     labels.column(ax, heights, texts, colours, bold)
 
 
+def foot_text(remarks: Sequence[str]) -> str:
+    """Return remarks as they stand under a picture, each wrapped."""
+    return "\n".join(textwrap.fill(remark, style.FOOT_WIDTH, subsequent_indent="    ") for remark in remarks)
+
+
 def foot(ax: Axes, remarks: Sequence[str]) -> None:
     """Write remarks under the axis label."""
-    text = "\n".join(textwrap.fill(remark, style.FOOT_WIDTH, subsequent_indent="    ") for remark in remarks)
     ax.annotate(
-        text,
+        foot_text(remarks),
         (0, 0),
         (0, -42),
         xycoords="axes fraction",

@@ -151,6 +151,8 @@ def outside_sentences(
         beyond = [band for band in bands if band not in touching(bands, span)]
         if what == kind and beyond and (only is None or index in only):
             said.append(failing_clause(kind, feature.must, feature.name, beyond))
+    if len(said) > MOST_BANDS:
+        said = [*said[:MOST_BANDS], f"{len(said) - MOST_BANDS} more fail somewhere"]
     return [f"{name}, beyond the supported rates: {'; '.join(said)}."] if said else []
 
 

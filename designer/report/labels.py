@@ -45,6 +45,11 @@ def spread(wanted: Sequence[float], sizes: Sequence[float], low: float, high: fl
     return result
 
 
+def height_of(lines: int) -> float:
+    """Return the height of a label in a column, points."""
+    return FONT_SMALL * 1.25 * lines + 2.0
+
+
 def column(
     ax: Axes,
     heights: Sequence[float],
@@ -57,7 +62,7 @@ def column(
     if figure is None or not texts:
         return []
     tall = ax.get_position().height * figure.get_figheight() * POINTS_PER_INCH
-    shares = [(FONT_SMALL * 1.25 * (text.count("\n") + 1) + 2.0) / tall for text in texts]
+    shares = [height_of(text.count("\n") + 1) / tall for text in texts]
     low, high = ax.get_ylim()
     wanted = [min(max((height - low) / (high - low), 0.0), 1.0) for height in heights]
     drawn = []
@@ -107,7 +112,7 @@ def beside(ax: Axes, points: Sequence[tuple[float, float]], texts: Sequence[Text
     for index, text in enumerate(texts[:keep]):
         size = text.get_window_extent(renderer)
         best: tuple[float, Bbox] | None = None
-        for distance in (9.0, 13.0, 18.0, 26.0, 36.0, 50.0):
+        for distance in (10.5, 14.0, 18.0, 26.0, 36.0, 50.0):
             for angle in np.deg2rad([20, -20, 70, -70, 160, -160, 110, -110]):
                 box = _box(pixels[index], (size.width, size.height), distance * unit, float(angle))
                 hidden = _hidden(box, pixels, taken, inside, unit)

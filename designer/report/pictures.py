@@ -23,6 +23,7 @@ from designer.report import (
     build_reach,
     build_sensitivity,
     figures,
+    labels,
     score_figures,
     style,
 )
@@ -35,6 +36,8 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 ALT_FILE = "alt.txt"
+PANEL, LINE = 3.3, 0.17
+"""Height of the axes of a gap panel and of a line of remarks, inches."""
 MARGIN = 0.2
 """Blank inches around a picture."""
 
@@ -109,7 +112,8 @@ def front_picture(result: SearchResult) -> Iterator[Picture]:
 def reach_picture(brief: Brief, result: SearchResult, best: Candidate) -> Picture:
     """Draw reach against frame rate: today and the best over the ledges. The picture that sells."""
     data = build_reach.reach(brief, pair(result, best), build_reach.reach_title(brief, result, best))
-    figure = _figure(style.SIZE_WIDE)
+    height = max(0.72 * style.SIZE_WIDE[1], _column_height(len(data.demands) + len(data.threads)))
+    figure = _figure((style.SIZE_WIDE[0], height / 0.72))
     figures.reach_by_rate(figure.add_axes((0.08, 0.12, 0.72, 0.72)), data)
     return Picture("reach-by-rate", figure, build_reach.reach_alt(data))
 
@@ -117,7 +121,9 @@ def reach_picture(brief: Brief, result: SearchResult, best: Candidate) -> Pictur
 def reach_panels(brief: Brief, result: SearchResult) -> Picture:
     """Draw the same for every set, a panel each on one scale, so that none hides another."""
     panels = build_reach.reach_panels(brief, result)
-    axes, figure = _grid(len(panels), 5.0, 2.7, gap=(_label_room(brief), 1.25))
+    axes, figure = _grid(
+        len(panels), 5.0, 2.7, gap=(_label_room(brief), 1.25 + _overhang(len(brief.ledges), 2.7))
+    )
     for ax, data in zip(axes, panels, strict=True):
         figures.reach_by_rate(ax, data)
     return Picture("reach-each", figure, " ".join(build_reach.reach_alt(data) for data in panels))
@@ -126,11 +132,14 @@ def reach_panels(brief: Brief, result: SearchResult) -> Picture:
 def gap_picture(brief: Brief, result: SearchResult, best: Candidate) -> Picture:
     """Draw how wide a gap is crossed against frame rate, a panel for each level of the far side."""
     panels = build_reach.gap_reaches(brief, result, best)
-    figure = _figure((style.SIZE_WIDE[0], 0.6 + 4.6 * len(panels)))
-    tall = figure.get_figheight()
-    for row, data in enumerate(panels):
-        bottom = (tall - 4.6 * (row + 1) + 0.25) / tall
-        figures.reach_by_rate(figure.add_axes((0.08, bottom, 0.72, 3.3 / tall)), data)
+    # Inches of each panel: the axes, its heading and axis label, and its remarks.
+    heights = [PANEL + 1.7 + LINE * figures.foot_text(one.remarks).count("\n") for one in panels]
+    figure = _figure((style.SIZE_WIDE[0], sum(heights)))
+    top = sum(heights)
+    for data, height in zip(panels, heights, strict=True):
+        top -= height
+        bottom = (top + height - PANEL) / sum(heights)
+        figures.reach_by_rate(figure.add_axes((0.08, bottom, 0.72, PANEL / sum(heights))), data)
     return Picture("gaps-by-rate", figure, " ".join(build_reach.reach_alt(data) for data in panels))
 
 
@@ -143,7 +152,8 @@ def arc_picture(brief: Brief, result: SearchResult) -> Picture:
     by_distance = panels[0].scene.by_distance
     height = min(max(width * tall / wide, 1.6), 5.2) if by_distance else 0.5 * width
     width = min(width, height * wide / tall) if by_distance else width
-    axes, figure = _grid(len(panels), width, height, gap=(_label_room(brief), 1.3))
+    overhang = _overhang(len(brief.ledges) + len(brief.gaps), height)
+    axes, figure = _grid(len(panels), width, height, gap=(_label_room(brief), 1.3 + overhang))
     for ax, data in zip(axes, panels, strict=True):
         arcs(ax, data)
     return Picture("arcs", figure, build_arcs.arc_alt(brief, panels))
@@ -160,6 +170,16 @@ def sensitivity_picture(brief: Brief, best: Candidate) -> Iterator[Picture]:
         score_figures.sensitivity(ax, name, bars, data.limit, row_labels=index == 0)
     score_figures.banner(axes[0], data.title, data.subtitle)
     yield Picture("sensitivity", figure, data.alt)
+
+
+def _column_height(names: int) -> float:
+    """Return the inches that a column of so many labels of two lines takes."""
+    return names * labels.height_of(2) / labels.POINTS_PER_INCH
+
+
+def _overhang(names: int, height: float) -> float:
+    """Return by how many inches a column of names is taller than its panel."""
+    return max(0.0, _column_height(names) - height)
 
 
 def _label_room(brief: Brief) -> float:

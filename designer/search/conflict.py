@@ -20,6 +20,8 @@ if TYPE_CHECKING:
 
 MOST_CLASHES = 3
 """How many clashes are told; more only confuse."""
+MOST_BITS = 62
+"""So many features fit into one of NumPy's whole numbers."""
 LARGEST_SET = 3
 """Sets of more demands than this say nothing to a person."""
 
@@ -27,7 +29,10 @@ LARGEST_SET = 3
 def failing_patterns(scores: Scores) -> set[int]:
     """Return which features fail together in designs that land: bit k stands for feature k."""
     short = scores.shortfalls[np.isfinite(scores.violation)] > 0.0
-    bits = short.astype(np.int64) @ (np.int64(1) << np.arange(short.shape[1], dtype=np.int64))
+    features = short.shape[1]
+    if features > MOST_BITS:
+        return {sum(1 << int(k) for k in np.flatnonzero(row)) for row in np.unique(short, axis=0)}
+    bits = short.astype(np.int64) @ (np.int64(1) << np.arange(features, dtype=np.int64))
     return {int(pattern) for pattern in np.unique(bits)}
 
 

@@ -9,8 +9,9 @@ from __future__ import annotations
 
 import math
 from collections import deque
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Generator, Iterator, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
+from contextlib import closing
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, TypeVar
 
@@ -148,7 +149,7 @@ def cells_of(designs: Designs) -> Ints:
 
 def in_order(
     work: Callable[[int], T], starts: range, workers: int, progress: Progress, stage: str
-) -> Iterator[T]:
+) -> Generator[T, None, None]:
     """Yield work(start) for each block, in order, with a few blocks under way in each worker thread."""
     if workers <= 1 or len(starts) == 1:
         for done, start in enumerate(starts):
@@ -214,10 +215,12 @@ def scan(
 
     evaluated = 0
     failing: set[int] = set()
-    for count, rows, patterns in in_order(work, layout.block_starts(), workers, progress or Silent(), "scan"):
-        leaders = absorb(leaders, rows)
-        evaluated += count
-        failing |= patterns
+    blocks = in_order(work, layout.block_starts(), workers, progress or Silent(), "scan")
+    with closing(blocks):  # an interruption stops the threads at once
+        for count, rows, patterns in blocks:
+            leaders = absorb(leaders, rows)
+            evaluated += count
+            failing |= patterns
     return Scan(
         leaders,
         evaluated,
@@ -245,8 +248,10 @@ def least_shortfalls(
         return [min(column) for column in zip(*found, strict=True)]
 
     least = [math.inf] * len(sets)
-    for found in in_order(work, layout.block_starts(), workers, progress or Silent(), "conflicts"):
-        least = [min(pair) for pair in zip(least, found, strict=True)]
+    blocks = in_order(work, layout.block_starts(), workers, progress or Silent(), "conflicts")
+    with closing(blocks):
+        for found in blocks:
+            least = [min(pair) for pair in zip(least, found, strict=True)]
     return least
 
 

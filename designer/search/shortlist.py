@@ -49,7 +49,8 @@ class Pick:
 def hypervolume(points: Floats, reference: tuple[float, float]) -> float:
     """Return the area that points (n, 2) dominate below a reference point, both coordinates minimised.
 
-    Zitzler & Thiele, IEEE Trans. Evol. Comput. 3(4), 1999, for two objectives: a sum of rectangles.
+    Zitzler & Thiele, IEEE Trans. Evol. Comput. 3(4), 1999 (from memory); with two objectives a sum of
+    rectangles.
     """
     points = np.asarray(points, dtype=np.float64).reshape(-1, 2)
     points = points[(points < np.array(reference)).all(axis=1)]
@@ -84,9 +85,9 @@ def choose(options: Options, always: Sequence[int], front: Ints, pool: Ints) -> 
     """Return the picks: those that always have a place, best first, then what differs from them.
 
     Members of the front are added greedily by the hypervolume that they add, with the tolerances as reference
-    (Guerreiro, Fonseca & Paquete, Evol. Comput. 24(3), 2016). Where that leaves too few, the pool of designs
-    nearly as good gives the one most different from all so far (Brill, Chang & Hopkins, Manage. Sci. 28(3),
-    1982).
+    (Guerreiro, Fonseca & Paquete, Evol. Comput. 24(3), 2016; from memory). Where that leaves too few, the
+    pool of designs nearly as good gives the one most different from all so far (Brill, Chang & Hopkins,
+    Manage. Sci. 28(3), 1982; from memory).
     """
     picks = [Pick(k, "always") for k in dict.fromkeys(always)]
     reference = _reference(options, picks[0].option)

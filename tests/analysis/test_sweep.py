@@ -38,10 +38,11 @@ def test_it_equals_the_judge_at_listed_rates() -> None:
         sweep = reach_by_rate(brief, constants)
         for row in judge(brief, constants, bands=False).jumps[0].rates:
             at = sweep.rate == int(row.rate.split()[0])
-            assert sweep.apex[at][0] == row.measures["apex"]
-            assert sweep.airtime[at][0] == row.measures["airtime"]
-            assert sweep.gaps[0.0].max_gap[at][0] == row.measures["max_gap"]
-            assert sweep.gaps[0.0].sure_gap[at][0] == row.measures["sure_gap"]
+            # The sweep runs on the closed form, the judge on the kernel: equal but for the last bit.
+            assert sweep.apex[at][0] == pytest.approx(row.measures["apex"], rel=1e-12)
+            assert sweep.airtime[at][0] == pytest.approx(row.measures["airtime"], rel=1e-12)
+            assert sweep.gaps[0.0].max_gap[at][0] == pytest.approx(row.measures["max_gap"], rel=1e-12)
+            assert sweep.gaps[0.0].sure_gap[at][0] == pytest.approx(row.measures["sure_gap"], rel=1e-12)
 
 
 def test_step_up_and_lower_far_side_reach_farther() -> None:

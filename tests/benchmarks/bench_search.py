@@ -2,7 +2,7 @@
 
     python tests/benchmarks/bench_search.py [--seeds 3] [--trials 600] [--workers 2]
 
-The brief: 2.55 million designs at 8 rates (see tests/reference/search_briefs.py). One run, one table: the scan
+The brief: 2.55 million designs at 8 rates (tests/reference/search_briefs.py). One run, one table: the scan
 with the closed form, the scan with every jump stepped by the compiled kernel, plain Python stepping
 extrapolated from a sample, Optuna's TPE alone, and the study as `search` runs it (seeds, TPE, refinement).
 "Success" counts the seeds that come within 1 % of the certified cost.

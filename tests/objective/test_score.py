@@ -8,8 +8,9 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from designer.brief.model import Gap, JumpBrief, Ledge, Target
+from designer.brief.model import Choice, Gap, JumpBrief, Ledge, Target
 from designer.objective.score import nine_digits, score
+from designer.objective.table import fixed_lengths
 from tests.reference.make import brief_of, table_of
 
 APEX = Target("apex", within=2.0, aim=120.0)
@@ -121,3 +122,16 @@ def test_nine_digits_keeps_short_numbers(figures: int, exponent: int) -> None:
 def test_nine_digits_leaves_the_odd_ones_alone() -> None:
     values = np.array([0.0, np.inf, -np.inf, np.nan])
     assert np.array_equal(nine_digits(values), values, equal_nan=True)
+
+
+def test_fixed_lengths_count_even_where_nothing_else_is_fixed() -> None:
+    search = {"step_up": Choice((7.0,)), "edge_allowance": Choice((3.0,))}
+    assert fixed_lengths(brief_of(search=search, base=None)) == (7.0, 3.0)
+    assert fixed_lengths(brief_of()) == (0.0, 0.0)
+
+
+def test_noise_in_the_last_bits_is_not_out_of_tolerance() -> None:
+    table = table_of(airtime=([0.78], [0.78], [0.78]))
+    scores = score(brief_of(Target("airtime", within=0.02, aim=0.76)), [table])
+    assert (0.78 - 0.76) / 0.02 > 1.0  # what binary64 makes of it
+    assert scores.worst[0] == 1.0

@@ -1,6 +1,6 @@
 """The score of DESIGN §5 once more, design by design, in plain Python over the twin of the update rule.
 
-Written from the text: loops over rates, targets and features, no arrays, nothing shared with designer/ but the
+Written from the text: loops over rates, targets and features, no arrays, nothing of designer/ but the
 brief's own values. Knows apex, airtime, landing_speed, max_gap, sure_gap and step_top.
 """
 

@@ -4,11 +4,13 @@ import itertools
 import math
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from designer.brief.model import Brief, Choice, Gap, Ledge, Target
 from designer.motion.rule import Rounding, Rule
-from designer.search.conflict import clashing_sets
+from designer.objective.score import Scores
+from designer.search.conflict import clashing_sets, failing_patterns
 from designer.search.result import Clash, SearchResult
 from designer.search.run import search
 from tests.reference.make import small_brief
@@ -141,6 +143,18 @@ def test_three_demands() -> None:
 )
 def test_smallest_sets(patterns: set[int], sets: list[tuple[int, ...]]) -> None:
     assert clashing_sets(patterns, max(patterns).bit_length()) == sets
+
+
+def test_patterns_of_many_features() -> None:
+    """One bit a feature, whether or not they fit into one of NumPy's numbers."""
+    for features in (3, 70):
+        short = np.zeros((4, features))
+        short[1, [0, features - 1]] = 2.0
+        short[2, 1] = 1.0
+        short[3] = np.inf
+        nothing = np.zeros(4)
+        scores = Scores(nothing, nothing, nothing, np.array([0.0, 1.0, 1.0, np.inf]), nothing, short)
+        assert failing_patterns(scores) == {0, 1 | 1 << features - 1, 2}
 
 
 def test_nothing_lands() -> None:
