@@ -45,7 +45,7 @@ _HOMES = {
     "new_brief": "designer.brief.template",
     "one_increment": "designer.analysis.sensitivity",
     "read_brief": "designer.brief.reading",
-    "search": "designer.search.run",
+    "search": "designer.search:itself",
     "search_document": "designer.report.document",
     "simulate": "designer.motion.simulate",
     "to_json": "designer.report.document",
@@ -54,7 +54,7 @@ _HOMES = {
     "with_settings": "designer.brief.settings",
     "write_results": "designer.report.results",
 }
-"""Where each public name lives: module, or module:name where it has another name there."""
+"""Where each public name lives: module, or module:name where it has another name there, or is the module."""
 
 __all__ = [
     "Brief",
@@ -86,6 +86,7 @@ def __getattr__(name: str) -> Any:
     if name not in _HOMES:
         raise AttributeError(f"module 'designer' has no attribute {name!r}")
     module, _, inside = _HOMES[name].partition(":")
-    value = getattr(importlib.import_module(module), inside or name)
+    home = importlib.import_module(module)
+    value = home if inside == "itself" else getattr(home, inside or name)
     globals()[name] = value
     return value

@@ -23,8 +23,15 @@ def test_the_sample_has_its_pictures() -> None:
         assert len(list((SAMPLE / "figures").glob(f"*.{kind}"))) >= 4
 
 
-@pytest.mark.parametrize(("name", "options"), [("rhythm-hopper", []), ("low-gravity-salvage", ["--trials", "80"]),
-                                               ("heavy-knight", ["--seed", "5", "--trials", "80"])])  # fmt: skip
+RUNS = [
+    ("rhythm-hopper", []),
+    ("low-gravity-salvage", ["--trials", "80"]),
+    ("heavy-knight", ["--seed", "5"]),
+    ("rhythm-hopper", ["--objective", str(ROOT / "objectives" / "on_the_beat.py"), "--trials", "60"]),
+]
+
+
+@pytest.mark.parametrize(("name", "options"), RUNS)
 def test_one_worker_and_two_give_the_same_bytes(tmp_path: Path, name: str, options: list[str]) -> None:
     brief = ROOT / "objectives" / f"{name}.toml"
     written = []

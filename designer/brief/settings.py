@@ -7,23 +7,12 @@ from dataclasses import replace
 from difflib import get_close_matches
 from fractions import Fraction
 
+from designer.brief.choices import LIMITS
 from designer.brief.model import Brief, Loop
 from designer.brief.rates import read_rate
-from designer.brief.units import Limits, Misread, Units
+from designer.brief.units import Misread, Units
 from designer.errors import Fault, InputError
 from designer.motion.rule import CONSTANT_NAMES, Constants
-
-LIMITS = {
-    "gravity": Limits("acceleration", 0, beyond=True),
-    "launch_speed": Limits("speed", 0, beyond=True),
-    "grain": Limits("speed", 0),
-    "run_speed": Limits("speed", 0),
-    "fall_factor": Limits("number", 0, beyond=True),
-    "terminal_speed": Limits("speed", 0, beyond=True, none=True),
-    "step_up": Limits("length", 0),
-    "edge_allowance": Limits("length", 0),
-}
-"""What each constant but the step may be."""
 
 
 def with_settings(brief: Brief, base: Constants | None, settings: Sequence[str]) -> Constants:

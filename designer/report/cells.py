@@ -40,7 +40,10 @@ def deviation_text(deviation: float | None) -> str:
     """Return a deviation in tolerances, with "!" where it is out of tolerance or does not exist."""
     if deviation is None:
         return f"{NO_VALUE}!"
-    return figure(deviation, 1, signed=True) + ("!" if abs(deviation) > 1.0 else "")
+    off = abs(deviation) > 1.0
+    # A hair beyond one tolerance should not read as exactly one.
+    text = figure(deviation, 2 if off and abs(deviation) < 1.05 else 1, signed=True)
+    return text + ("!" if off else "")
 
 
 def spare_text(feature: Ledge | Gap, found: FeatureVerdict) -> str:

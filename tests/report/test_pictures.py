@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import itertools
-from collections.abc import Iterator
 from dataclasses import replace
 from pathlib import Path
 from xml.etree import ElementTree
@@ -11,8 +10,9 @@ from xml.etree import ElementTree
 import matplotlib
 import numpy as np
 import pytest
+from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.text import Annotation, Text
+from matplotlib.text import Text
 
 from designer.brief.model import Brief, Gap, Ledge, Rate, Rates
 from designer.objective.judge import judge
@@ -58,23 +58,35 @@ def crowded() -> Brief:
     return bring(courier(ledges=ledges, gaps=gaps, rates=Rates(rates), aim_at=rates[12]), LONG, "b")
 
 
-def texts(figure: Figure) -> Iterator[Text]:
-    """Every visible text of a figure that says something."""
-    for item in figure.findobj(Text):
-        if isinstance(item, Text) and item.get_visible() and item.get_text().strip():
-            yield item
+def beyond(figure: Figure) -> set[int]:
+    """Ids of the tick labels outside their axis, which exist but are not drawn."""
+    hidden = set()
+    for axis in (part for axes in every_axes(figure) for part in (axes.xaxis, axes.yaxis)):
+        low, high = sorted(axis.get_view_interval())
+        room = 1e-9 * max(1.0, abs(low), abs(high))
+        for tick in [*axis.majorTicks, *axis.minorTicks]:
+            if not low - room <= tick.get_loc() <= high + room:
+                hidden |= {id(tick.label1), id(tick.label2)}
+    return hidden
+
+
+def every_axes(figure: Figure) -> list[Axes]:
+    """Axes and the axes inside them."""
+    return [one for one in figure.findobj(Axes) if isinstance(one, Axes)]
 
 
 def overlaps(picture: Picture) -> list[tuple[str, str]]:
     """Pairs of texts whose boxes share more than a hair."""
     figure = picture.figure
     figure.canvas.draw()
+    hidden = beyond(figure)
     boxes = []
-    for text in texts(figure):
-        # Tick labels outside the axes' range exist but are not drawn.
-        box = Text.get_window_extent(text) if isinstance(text, Annotation) else text.get_window_extent()
-        inside = text.axes is None or drawn(text)
-        if inside and box.width > 1 and box.height > 1:
+    for text in figure.findobj(Text):
+        if not isinstance(text, Text) or not text.get_visible() or id(text) in hidden:
+            continue
+        # An annotation's own box may hold an arrow; only its text counts.
+        box = Text.get_window_extent(text)
+        if text.get_text().strip() and box.width > 1 and box.height > 1:
             boxes.append((text.get_text(), box))
     found = []
     for (name, one), (other, two) in itertools.combinations(boxes, 2):
@@ -85,16 +97,13 @@ def overlaps(picture: Picture) -> list[tuple[str, str]]:
     return found
 
 
-def drawn(text: Text) -> bool:
-    """Whether a tick label lies in the range of its axis; other texts always count."""
-    axes = text.axes
-    for axis, limits in ((axes.xaxis, axes.get_xlim()), (axes.yaxis, axes.get_ylim())):
-        for tick in [*axis.majorTicks, *axis.minorTicks]:
-            if text in (tick.label1, tick.label2):
-                low, high = sorted(limits)
-                room = 1e-9 * max(1.0, abs(low), abs(high))
-                return low - room <= tick.get_loc() <= high + room
-    return True
+def test_the_check_for_overlaps_finds_one() -> None:
+    with matplotlib.rc_context(style.RC):
+        picture = next(draw_all(courier(), judged(courier(), result(courier(), 1))))
+        axes = picture.figure.axes[0]
+        axes.text(0.5, 0.5, "one upon", transform=axes.transAxes)
+        axes.text(0.51, 0.5, "another", transform=axes.transAxes)
+        assert overlaps(picture) == [("one upon", "another")]
 
 
 def drawn_all(brief: Brief, found: SearchResult) -> list[Picture]:

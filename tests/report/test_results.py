@@ -37,9 +37,13 @@ def test_a_file_is_whole_or_the_old_one(tmp_path: Path) -> None:
 
 
 def test_a_folder_appears_only_when_it_is_complete(tmp_path: Path) -> None:
-    with pytest.raises(KeyboardInterrupt), new_folder(tmp_path, "job") as (folder, _):
-        (folder / "half").write_text("half")
-        raise KeyboardInterrupt
+    def stopped() -> None:
+        with new_folder(tmp_path, "job") as (folder, _):
+            (folder / "half").write_text("half")
+            raise KeyboardInterrupt
+
+    with pytest.raises(KeyboardInterrupt):
+        stopped()
     assert list(tmp_path.iterdir()) == []
 
 

@@ -164,6 +164,8 @@ def test_many_rates_are_cut_to_the_telling_ones() -> None:
 def test_deviations_are_signed_and_marked_beyond_one_tolerance() -> None:
     assert deviation_text(0.44) == "+0.4"
     assert deviation_text(-3.25) == "−3.2!"
+    assert deviation_text(1.0) == "+1.0"
+    assert deviation_text(1.012) == "+1.01!"
     assert deviation_text(None) == "–!"
     assert deviation_text(-0.01) == "+0.0"
 
