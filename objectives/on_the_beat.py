@@ -11,7 +11,7 @@ from typing import Any
 
 import numpy as np
 
-BEATS_PER_MINUTE = 132.0
+BEATS_PER_MINUTE = 120.0
 WITHIN = 0.008
 """Seconds off the beat that count as one tolerance; about where players begin to hear it."""
 

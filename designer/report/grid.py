@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from rich import box
 from rich.cells import cell_len
@@ -15,6 +15,8 @@ from designer.report.style import TERMINAL
 
 ONE_LINE = 12
 """Longest head that stays on one line where its cells are narrower."""
+FOLDED = 12
+"""What columns at the right may be narrowed to before a table splits."""
 PADDING = 2
 """Blank characters between two columns."""
 
@@ -58,28 +60,32 @@ class Grid:
     sections: frozenset[int] = field(default_factory=frozenset)
     """Rows after which a line is drawn."""
 
-    def blocks(self, width: int) -> list[tuple[Column, ...]]:
-        """Return the columns of each table that fits a width in characters, of about equal number.
+    def layout(self, width: int) -> tuple[list[tuple[Column, ...]], tuple[Column, ...]]:
+        """Return the middle columns of each table that fits a width in characters, and the columns at right.
 
-        Every block has at least one middle column, even where that is too wide.
+        Rather than split, the columns at right are folded. Split tables have about equally many columns, and
+        at least one middle column each, even where that is too wide.
         """
+        folded = tuple(replace(column, widest=min(column.widest, FOLDED)) for column in self.right)
         for count in range(1, len(self.middle) + 1):
             size = -(-len(self.middle) // count)
             found = [self.middle[i : i + size] for i in range(0, len(self.middle), size)]
-            if all(self._needs(block) <= width for block in found):
-                return found
-        return [(column,) for column in self.middle]
+            for right in (self.right, folded):
+                if all(self._needs(block, right) <= width for block in found):
+                    return found, right
+        return [(column,) for column in self.middle], folded
 
-    def _needs(self, block: Sequence[Column]) -> int:
-        """Return the width of a table with these middle columns."""
-        return sum(column.width + PADDING for column in (*self.left, *block, *self.right)) + 1
+    def _needs(self, block: Sequence[Column], right: Sequence[Column]) -> int:
+        """Return the width of a table with these columns in the middle and at right."""
+        return sum(column.width + PADDING for column in (*self.left, *block, *right)) + 1
 
     def __rich_console__(self, console: Console, options: ConsoleOptions) -> RenderResult:
         """Render as one or more tables for the width that there is."""
-        for index, middle in enumerate(self.blocks(options.max_width)):
+        blocks, right = self.layout(options.max_width)
+        for index, middle in enumerate(blocks):
             if index:
                 yield Text("")
-            yield _table((*self.left, *middle, *self.right), self.sections)
+            yield _table((*self.left, *middle, *right), self.sections)
 
 
 def _table(columns: Sequence[Column], sections: frozenset[int]) -> Table:

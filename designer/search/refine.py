@@ -155,7 +155,7 @@ def refine(evaluator: Evaluator, *, seed: int, progress: Progress | None = None)
     streams = np.random.SeedSequence([seed, 1]).spawn(len(starts))
     for k, (start, stream) in enumerate(zip(starts, streams, strict=True)):
         _local(evaluator, start, np.random.default_rng(stream))
-        progress.update("refine", k + 1, len(starts))
+        progress.update("Refining the best", k + 1, len(starts))
     matrix, scores = evaluator.everything()
     ranks = penalised(scores)
     refined = float(np.min(ranks))

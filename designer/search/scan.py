@@ -215,7 +215,7 @@ def scan(
 
     evaluated = 0
     failing: set[int] = set()
-    blocks = in_order(work, layout.block_starts(), workers, progress or Silent(), "scan")
+    blocks = in_order(work, layout.block_starts(), workers, progress or Silent(), "Scanning the grid")
     with closing(blocks):  # an interruption stops the threads at once
         for count, rows, patterns in blocks:
             leaders = absorb(leaders, rows)
@@ -248,7 +248,7 @@ def least_shortfalls(
         return [min(column) for column in zip(*found, strict=True)]
 
     least = [math.inf] * len(sets)
-    blocks = in_order(work, layout.block_starts(), workers, progress or Silent(), "conflicts")
+    blocks = in_order(work, layout.block_starts(), workers, progress or Silent(), "Looking for what clashes")
     with closing(blocks):
         for found in blocks:
             least = [min(pair) for pair in zip(least, found, strict=True)]

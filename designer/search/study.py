@@ -102,7 +102,7 @@ def run_study(evaluator: Evaluator, *, seed: int, trials: int, progress: Progres
             done += len(asked)
             if found < best:
                 best, last_better = found, done
-            progress.update("study", done, trials)
+            progress.update("Running the study", done, trials)
     why = "all were run" if done >= trials else f"none of the last {done - last_better} was better"
     return (
         f"Optuna {optuna.__version__} (TPE, seed {seed}) ran {done} of {trials} trials, {queued} of them "

@@ -17,13 +17,13 @@ ROOT = Path(__file__).resolve().parents[2]
 def test_the_shipped_module_finds_the_beat() -> None:
     module = load_objective(ROOT / "objectives" / "on_the_beat.py")
     brief = brief_of()
-    # Airtimes by the swept landing of the semi-implicit rule at 10 ms; half a beat is 60/132/2 s.
+    # Airtimes by the swept landing of the semi-implicit rule at 10 ms; half a beat is 60/120/2 s.
     sets = [Constants(1000.0, speed) for speed in (340.0, 345.9, 400.0)]
     designs = Designs.of(sets)
     tables = design_tables(brief, designs)
     airtime = tables[0].measures["airtime"].nominal
     (terms,) = module.terms(designs, tables).values()
-    half = 60 / 132 / 2
+    half = 60 / 120 / 2
     expected = [(t - round(t / half) * half) / 0.008 for t in airtime]
     assert terms == pytest.approx(expected)
 
