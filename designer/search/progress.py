@@ -9,7 +9,7 @@ class Progress(Protocol):
     """Anything that wants to hear how far a search is. Called from the searching thread only."""
 
     def update(self, stage: str, done: int, total: int) -> None:
-        """Tell that `done` of `total` of a stage is behind us; stage is words for a person: "Scanning the grid"."""
+        """Tell that `done` of `total` of a stage is behind us; stage is for a person: "Scanning the grid"."""
 
 
 class Silent:

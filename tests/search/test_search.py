@@ -162,13 +162,13 @@ def test_progress_is_told(monkeypatch: pytest.MonkeyPatch) -> None:
     for workers in (1, 2):
         listener = Listener()
         search(small_brief(), workers=workers, progress=listener)
-        scans = [(done, total) for stage, done, total in listener.told if stage == "scan"]
+        scans = [(done, total) for stage, done, total in listener.told if stage == "Scanning the grid"]
         assert len(scans) > 2
         assert [done for done, _ in scans] == list(range(1, scans[-1][1] + 1))
     listener = Listener()
     search(small_brief(), budget=200, trials=32, progress=listener)
-    assert ("study", 32, 32) in listener.told
-    assert any(stage == "refine" for stage, _, _ in listener.told)
+    assert ("Running the study", 32, 32) in listener.told
+    assert any(stage == "Refining the best" for stage, _, _ in listener.told)
 
 
 @pytest.mark.parametrize("workers", [1, 2])
