@@ -32,7 +32,7 @@ DEFAULTS = {
     "step_up": 0.0,
     "edge_allowance": 0.0,
 }
-"""Constants that need not be said (DESIGN §6); infinity means no terminal speed."""
+"""Constants that need not be said (DEVELOPERS.md, brief); infinity means no terminal speed."""
 
 
 class Builder:

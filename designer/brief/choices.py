@@ -34,7 +34,7 @@ Path = tuple[str | int, ...]
 
 
 def range_points(low: Fraction, high: Fraction, every: Fraction) -> tuple[float, ...]:
-    """Return the binary64 nearest to each of low + i·every up to high (DESIGN §6).
+    """Return the binary64 nearest to each of low + i·every up to high (DEVELOPERS.md, brief).
 
     high is one of them only where it is a whole number of increments away.
     """

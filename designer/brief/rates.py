@@ -49,7 +49,7 @@ def split_rate(value: object, allowed: str = ALLOWED) -> tuple[Fraction, str]:
 
 
 def step_of(number: Fraction, unit: str, frame_time: FrameTime) -> float:
-    """Return the step in seconds that a rate in Hz or a step in ms becomes (DESIGN §3).
+    """Return the step in seconds that a rate in Hz or a step in ms becomes (DEVELOPERS.md, update rule).
 
     1000/rate is formed exactly, so that 1000/125 is never a hair under 8.
     """
@@ -73,7 +73,7 @@ def read_rate(value: object, frame_time: FrameTime, *, supported: bool = True) -
 
 
 def parse_rate(text: str, frame_time: FrameTime = FrameTime.EXACT) -> Rate:
-    """Return the rate that "125 Hz" or "8 ms" means under this frame_time (DESIGN §3); InputError if none."""
+    """Return the rate that "125 Hz" or "8 ms" means under this frame_time; InputError if none."""
     try:
         return read_rate(text, FrameTime(frame_time))
     except Misread as misread:

@@ -25,7 +25,7 @@ _START = "leapwright new FILE writes a brief to start from"
 
 
 def read_brief(path: Path | str) -> Brief:
-    """Return the brief that a TOML file states (DESIGN §6).
+    """Return the brief that a TOML file states (DEVELOPERS.md, brief).
 
     Lengths come out in the brief's unit, times in seconds. Raises InputError with a fault for everything
     that is wrong: in the file itself, in its TOML, in its keys, values and in what they say together.

@@ -1,4 +1,4 @@
-"""From raw jumps to what designers talk about (DESIGN: measures); one definition for every command."""
+"""From raw jumps to what designers talk about (DEVELOPERS.md, measures); one definition for every command."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""The score (DESIGN: the score): miss, rate spread, cost, worst and violation, over arrays of designs."""
+"""The score (DEVELOPERS.md, score): miss, rate spread, cost, worst and violation, over arrays of designs."""
 
 from __future__ import annotations
 

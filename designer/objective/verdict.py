@@ -31,7 +31,7 @@ class TargetVerdict:
     value: float | None
     """The measure where it counts: at the nominal rate for an aim, else at the worst rate."""
     deviation: float | None
-    """d of DESIGN §5: signed, in tolerances; beyond ±1 is out of tolerance."""
+    """d (DEVELOPERS.md, score): signed, in tolerances; beyond ±1 is out of tolerance."""
     spread: float | None
     """max − min over nominal and supported rates, in the measure's unit."""
 

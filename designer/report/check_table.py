@@ -31,7 +31,7 @@ def _check_measures(brief: Brief, verdict: Verdict, jump: int) -> list[tuple[str
 
 
 def _deviation_at(target: Target, value: float | None) -> float | None:
-    """Return d of DESIGN §5 at one rate, in tolerances."""
+    """Return a target's deviation at one rate, in tolerances."""
     if value is None:
         return None
     if target.aim is not None:

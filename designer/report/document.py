@@ -1,4 +1,4 @@
-"""Verdicts and search results as JSON documents (DESIGN: commands), the same bytes on every machine."""
+"""Verdicts and search results as JSON documents (DEVELOPERS.md), the same bytes everywhere."""
 
 from __future__ import annotations
 

@@ -135,7 +135,7 @@ def _join(first: Scores, second: Scores) -> Scores:
 
 
 def penalised(scores: Scores) -> Floats:
-    """Return one finite number a design that sorts like DESIGN §5: feasible ones first, by cost."""
+    """Return one finite number a design that sorts as designs do: feasible ones first, by cost."""
     landed = np.isfinite(scores.violation)
     rank = np.where(landed, np.nan_to_num(scores.cost) + np.where(landed, scores.violation, 0.0), 0.0)
     far = np.where(scores.feasible, 0.0, np.where(landed, INFEASIBLE, 1e12))

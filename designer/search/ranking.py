@@ -67,7 +67,7 @@ class Rows:
 
     @property
     def rank(self) -> Floats:
-        """What orders designs of which none is feasible: cost + violation (DESIGN §5)."""
+        """What orders designs of which none is feasible: cost + violation (DEVELOPERS.md, score)."""
         return self.cost + self.violation
 
     @property
@@ -128,7 +128,7 @@ class Leaders:
 
     @property
     def ranked(self) -> Rows:
-        """The best and the runner-up (fewer where fewer land) in the order of DESIGN §5."""
+        """The best and the runner-up (fewer where fewer land) in the order of the score (DEVELOPERS.md)."""
         return join([self.feasible, self.infeasible]).take(
             np.arange(len(self.feasible) + len(self.infeasible))[:2]
         )

@@ -79,7 +79,7 @@ class Space:
         """Return the grid's designs with these numbers.
 
         They count in the order of SEARCHABLE, the last constant fastest, so the lower number is the one
-        that DESIGN §5 prefers between equals.
+        that wins between equals (DEVELOPERS.md, score).
         """
         where = np.unravel_index(np.asarray(indices), self.shape)
         return Designs(*(values(axis)[at] for axis, at in zip(self.axes, where, strict=True)))

@@ -64,7 +64,7 @@ def test_without_grain_nothing_flips_and_the_slope_is_that_of_the_formula() -> N
     found = one_increment(brief, replace(PROPOSED[0], grain=0.0))  # type: ignore[arg-type]
     assert not any(one.flip for one in found.nudges)
     up = next(one for one in found.nudges if one.constant == "launch_speed" and one.direction == 1)
-    # Continuous: the apex v²/2g grows by v/g for each unit of speed (CHECKS §1); the step changes it little.
+    # Continuous: the apex v²/2g grows by v/g for each unit of speed (SOURCES.md, section 1); the step changes it little.
     assert up.changes[0].change == pytest.approx(5 * 637.5 / 1620, rel=0.03)
 
 
@@ -120,7 +120,7 @@ def test_a_nudge_that_never_lands_has_no_numbers() -> None:
     search = {**(brief.search or {}), "grain": Choice((1.0, 60.0))}
     found = one_increment(replace(brief, search=search), TODAY)
     nudge = next(one for one in found.nudges if one.constant == "grain")
-    # 1600·0.016 is 25.6, under half of a grain of 60: v never changes (CHECKS §3, stalls).
+    # 1600·0.016 is 25.6, under half of a grain of 60: v never changes (SOURCES.md, section 3, stalls).
     assert not nudge.lands
     assert nudge.miss is None
     assert nudge.changes[0].in_tolerances is None

@@ -1,4 +1,4 @@
-"""Reach at every whole rate against the case of SEARCH §14 and against jumps flown one by one."""
+"""Reach at every whole rate against a known case and against jumps flown one by one."""
 
 from __future__ import annotations
 
@@ -24,7 +24,7 @@ def test_the_known_case_comes_out() -> None:
 
 
 def test_rates_with_the_same_step_agree() -> None:
-    # Source: frame caps in whole milliseconds, CHECKS §10: 201 to 250 Hz all run at 4 ms.
+    # Source: frame caps in whole milliseconds, SOURCES.md, section 10: 201 to 250 Hz all run at 4 ms.
     sweep = reach_by_rate(courier(), TODAY)
     band = (sweep.rate >= 201) & (sweep.rate <= 250)
     assert set(sweep.step[band]) == {0.004}
@@ -62,7 +62,7 @@ def test_a_far_side_above_the_apex_is_never_reached() -> None:
 
 
 def test_what_never_lands_has_no_numbers() -> None:
-    # Source: CHECKS §3, stalls: toward zero before the move with g·h under a grain hovers.
+    # Source: SOURCES.md, section 3, stalls: toward zero before the move with g·h under a grain hovers.
     rule = Rule(
         Integrator.AVERAGE, Rounding(Mode.TOWARD_ZERO, Place.BEFORE_MOVE), frame_time=FrameTime.WHOLE_MS_DOWN
     )

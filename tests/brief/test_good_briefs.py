@@ -63,7 +63,7 @@ def test_they_are_different_games() -> None:
 
 
 def test_the_courier_is_the_design_s_own() -> None:
-    """DESIGN §6, without what later versions know."""
+    """DEVELOPERS.md, brief, without what later versions know."""
     brief = read_brief(OBJECTIVES[2])
     assert brief.title == "Night-market courier"
     assert (brief.length_unit, dict(brief.lengths)) == ("cm", {"tile": 64.0})
@@ -98,7 +98,7 @@ def test_the_courier_is_the_design_s_own() -> None:
 
 
 def test_what_need_not_be_said() -> None:
-    """The defaults of DESIGN §6."""
+    """The defaults of DEVELOPERS.md, brief."""
     brief = parse_brief(
         '[loop]\nsteps = "fixed"\n[rule]\nintegrator = "average"\n'
         '[today]\ngravity = 9.8\nlaunch_speed = 4\nstep = "50 Hz"\n',

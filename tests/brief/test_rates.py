@@ -13,7 +13,7 @@ from designer.brief.units import Misread, Misreadings
 from designer.errors import InputError
 from designer.motion.rule import FrameTime
 
-# shared/CHECKS.md §10: whole milliseconds of a frame cap, ms = 1000 // cap [C].
+# SOURCES.md, section 10: whole milliseconds of a frame cap, ms = 1000 // cap (computed).
 WHOLE_MS = {
     1: (501, 1000), 2: (334, 500), 3: (251, 333), 4: (201, 250), 5: (167, 200), 6: (143, 166), 7: (126, 142),
     8: (112, 125), 9: (101, 111), 10: (91, 100), 11: (84, 90), 12: (77, 83), 13: (72, 76), 14: (67, 71),
@@ -23,7 +23,7 @@ WHOLE_MS = {
 
 @pytest.mark.parametrize("ms", sorted(WHOLE_MS))
 def test_frame_caps_in_whole_milliseconds(ms: int) -> None:
-    """CHECKS §10, both ends of each band and everything between."""
+    """SOURCES.md, section 10, both ends of each band and everything between."""
     first, last = WHOLE_MS[ms]
     for rate in range(first, last + 1):
         assert parse_rate(f"{rate} Hz", FrameTime.WHOLE_MS_DOWN).step == ms / 1000.0
@@ -33,7 +33,7 @@ def test_frame_caps_in_whole_milliseconds(ms: int) -> None:
 
 @given(st.integers(1, 10_000))
 def test_frame_times_are_those_of_the_design(rate: int) -> None:
-    """DESIGN §3, in exact integers."""
+    """The definition (DEVELOPERS.md, update rule) in exact integers."""
     text = f"{rate} Hz"
     assert parse_rate(text, FrameTime.EXACT).step == 1.0 / rate
     assert parse_rate(text, FrameTime.WHOLE_MS_DOWN).step == max(1, 1000 // rate) / 1000.0
@@ -54,7 +54,7 @@ def test_where_1000_over_rate_is_a_tie_or_a_hair_off() -> None:
 
 
 def test_every_rate_is_echoed_with_what_it_became() -> None:
-    """The example of DESIGN §3."""
+    """The example of DEVELOPERS.md, update rule."""
     assert parse_rate("128 Hz", FrameTime.WHOLE_MS_DOWN).echo == "128 Hz → 7 ms (142.9 Hz)"
 
 

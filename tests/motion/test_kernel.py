@@ -150,7 +150,7 @@ def fly(rule: Rule, gravity: float, speed: float, step: float, grain: float) -> 
 @pytest.mark.parametrize("mode", list(Mode))
 @pytest.mark.parametrize("q", [1.0, 0.25])
 def test_carried_remainder_loses_nothing(integrator: Integrator, at: Place, mode: Mode, q: float) -> None:
-    """CHECKS section 9 (computed): v + e is the unrounded velocity, for ever; |e| is at most half a grain to
+    """SOURCES.md, section 9 (computed): v + e is the unrounded velocity, for ever; |e| is at most half a grain to
     nearest, less than one otherwise. Exact in numbers that binary holds."""
     rule = codes(Rule(integrator, Rounding(mode, at, carry=True)))
     gravity, speed, step = 811.0, 270.25, 1 / 128
@@ -206,7 +206,7 @@ def test_no_gravity_in_the_first_step_is_no_standstill() -> None:
 
 
 def test_the_longest_flight() -> None:
-    """DESIGN section 3: N = floor(30/h + 0.5)."""
+    """DEVELOPERS.md, update rule: N = floor(30/h + 0.5)."""
     for step, last in ((0.008, 3750), (0.016, 1875), (1 / 60, 1800), (0.033, 909), (0.007, 4286)):
         assert kernel.last_step(step) == last
 

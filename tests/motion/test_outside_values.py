@@ -16,7 +16,7 @@ from tests.reference import trade_case as trade
 from tests.reference.jumps import airtime, launches, rule
 from tests.reference.worked_examples import EXAMPLES, HEIGHTS, Example
 
-# --- the trade's case: common practice, no source (CHECKS section 3) ---
+# --- the trade's case: common practice, no source (SOURCES.md, section 3) ---
 
 MS = np.arange(1, 41) / 1000
 
@@ -99,7 +99,7 @@ def test_hovers_at_one_millisecond() -> None:
 
 @pytest.mark.parametrize(("integrator", "seconds"), [("semi-implicit", 6.31), ("average", 12.6)])
 def test_sinks_at_the_end_of_the_step(integrator: str, seconds: float) -> None:
-    """At the end of the step a low jump sinks by g·h a second and lands (CHECKS section 3, computed)."""
+    """At the end of the step a low jump sinks by g·h a second and lands (SOURCES.md, section 3, computed)."""
     jumps = simulate(rule(integrator, "toward-zero"), launches(800.0, 100.0, 0.001, 1.0))
     assert int(jumps.status) == Status.LANDS
     assert float(airtime(jumps, 0.001)) == pytest.approx(
@@ -107,7 +107,7 @@ def test_sinks_at_the_end_of_the_step(integrator: str, seconds: float) -> None:
     )
 
 
-# --- closed forms of the unrounded steppers (CHECKS section 3, checked there with exact fractions) ---
+# --- closed forms of the unrounded steppers (SOURCES.md, section 3, checked there with exact fractions) ---
 
 
 def test_launch_convention() -> None:
@@ -149,7 +149,7 @@ def test_stepped_closed_form_table(
 
 @pytest.mark.parametrize(("integrator", "ratio"), [("semi-implicit", 1.0), ("average", 0.5)])
 def test_a_first_step_that_goes_nowhere_is_no_landing(integrator: str, ratio: float) -> None:
-    """y_1 = y_0 there, and the landing is n = 2 (CHECKS section 3)."""
+    """y_1 = y_0 there, and the landing is n = 2 (SOURCES.md, section 3)."""
     jumps = simulate(rule(integrator), launches(64.0, ratio * 64.0 / 32, 1 / 32))
     assert int(jumps.steps) == 2
     assert float(jumps.apex) == 0.0
@@ -158,7 +158,7 @@ def test_a_first_step_that_goes_nowhere_is_no_landing(integrator: str, ratio: fl
 # --- textbooks (see tests/reference/worked_examples.py for the sources) ---
 
 BIAS = {"explicit": -1.0, "semi-implicit": 1.0, "average": 0.0}
-"""c of CHECKS section 3: the stepper samples the parabola of launch speed v0 − c·g·h/2."""
+"""c of SOURCES.md, section 3: the stepper samples the parabola of launch speed v0 − c·g·h/2."""
 
 
 BOOSTER = next(e for e in EXAMPLES if "booster" in e.source)

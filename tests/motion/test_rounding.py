@@ -52,7 +52,7 @@ def test_published_table_on_other_grains(grain: float, mode: Mode) -> None:
 
 
 def test_just_under_a_half() -> None:
-    """CHECKS section 4, computed: only the formula with + 0.5 is fooled."""
+    """SOURCES.md, section 4, computed: only the formula with + 0.5 is fooled."""
     assert snap(JUST_UNDER_HALF, 1.0, MODE_CODES[Mode.NEAREST_UP]) == 1.0
     for mode in (Mode.NEAREST_EVEN, Mode.NEAREST_AWAY):
         for sign in (1.0, -1.0):
@@ -61,7 +61,7 @@ def test_just_under_a_half() -> None:
 
 
 def test_minus_two_and_a_half_goes_up_or_away() -> None:
-    """CHECKS section 4: floor(−2.5 + ½) = −2 is half-up, not half-away."""
+    """SOURCES.md, section 4: floor(−2.5 + ½) = −2 is half-up, not half-away."""
     assert snap(-2.5, 1.0, MODE_CODES[Mode.NEAREST_UP]) == -2.0
     assert snap(-2.5, 1.0, MODE_CODES[Mode.NEAREST_AWAY]) == -3.0
 

@@ -78,7 +78,7 @@ def test_bands_agree_with_stepping_each_rate() -> None:
     apex = simulate(RULE, Designs.of([TODAY]).launches(steps)).apex[0]
     assert bands[1] == band_names(apex > 123.0 + 1e-9)
     assert bands[0] == band_names(apex < 112.0 - 1e-9)
-    # CHECKS: a cap of 201 to 250 Hz is 4 ms, 334 to 500 Hz is 2 ms (computed).
+    # SOURCES.md, section 10: a cap of 201 to 250 Hz is 4 ms, 334 to 500 Hz is 2 ms (computed).
     assert "201–250 Hz" in bands[1]
 
 

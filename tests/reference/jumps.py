@@ -26,7 +26,7 @@ def rule(integrator: str = "average", mode: str = "nearest-even", at: str = "end
 
 
 def airtime(jumps: Jumps, step: object) -> np.ndarray:
-    """Return DESIGN section 3's landing time."""
+    """Return the landing time (DEVELOPERS.md, update rule)."""
     return (jumps.steps - 1) * np.asarray(step) + np.asarray(step) * jumps.fraction
 
 

@@ -1,4 +1,4 @@
-"""The score of DESIGN §5 once more, design by design, in plain Python over the twin of the update rule.
+"""The score once more (DEVELOPERS.md), design by design, in plain Python over the twin of the update rule.
 
 Written from the text: loops over rates, targets and features, no arrays, nothing of designer/ but the
 brief's own values. Knows apex, airtime, landing_speed, max_gap, sure_gap and step_top.
@@ -151,7 +151,7 @@ def score_design(brief: Brief, values: tuple[float, ...]) -> TwinScore:
 
 
 def brute_force(brief: Brief) -> list[TwinScore]:
-    """Score every design of the grid, best first in the order of DESIGN §5."""
+    """Score every design of the grid, best first in the order of the score (DEVELOPERS.md)."""
     axes = [brief.search[name].values if name in brief.search else (0.0,) for name in ORDER]
     scored = [score_design(brief, values) for values in itertools.product(*axes)]
 

@@ -158,7 +158,7 @@ def test_patterns_of_many_features() -> None:
 
 
 def test_nothing_lands() -> None:
-    """A grain so coarse that no step takes anything off the velocity (CHECKS §3, stalls)."""
+    """A grain so coarse that no step takes anything off the velocity (SOURCES.md, section 3, stalls)."""
     brief = fixed_loop(
         Rule("semi-implicit", Rounding(at="before-move")),
         {

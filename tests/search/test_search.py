@@ -189,7 +189,7 @@ def test_options_out_of_range(option: str) -> None:
 
 
 def test_lucky_rounding_is_mentioned() -> None:
-    """SEARCH §6: semi-implicit at a long step jumps low; a coarse grain happens to make up for it."""
+    """Semi-implicit at a long step jumps low; a coarse grain happens to make up for it."""
     result = search(grained())
     for candidate in result.shortlist:
         if "luck of rounding" in candidate.why:

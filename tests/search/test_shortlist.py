@@ -78,7 +78,7 @@ def test_leaders_do_not_depend_on_lots_or_order(some: list[tuple[int, int, float
 @given(pairs)
 @settings(max_examples=200, deadline=None)
 def test_ranking_and_front_against_plain_loops(some: list[tuple[int, int, float]]) -> None:
-    """DESIGN §5's order, and dominance by its definition; feasibility before cost: Deb 2000 (from memory)."""
+    """The order of designs, and dominance by definition; feasibility before cost: Deb 2000 (from memory)."""
     rows = rows_of([m / 4 for m, _, _ in some], [s / 4 for _, s, _ in some], [v for _, _, v in some])
     leaders = absorb(Leaders(), rows)
     landing = [k for k in range(len(rows)) if np.isfinite(rows.violation[k])]

@@ -155,7 +155,7 @@ def test_seeds_hold_today_sets_and_the_inverted_formulas() -> None:
     gravity, launch = (float(x) for x in constants_for(120.0, 0.76))
     near = [row for row in rows if abs(row[0] - gravity) <= 5 and abs(row[1] - launch) < 0.05 * launch]
     assert near
-    # Grain 1 at 4, 8 and 16 ms: only multiples of 250 are whole grains at every step (SEARCH §4).
+    # Grain 1 at 4, 8 and 16 ms: only multiples of 250 are whole grains at every step.
     assert any(row[0] % 250 == 0 and row[3] == 1.0 for row in rows)
 
 
