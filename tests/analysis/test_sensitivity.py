@@ -64,7 +64,7 @@ def test_without_grain_nothing_flips_and_the_slope_is_that_of_the_formula() -> N
     found = one_increment(brief, replace(PROPOSED[0], grain=0.0))  # type: ignore[arg-type]
     assert not any(one.flip for one in found.nudges)
     up = next(one for one in found.nudges if one.constant == "launch_speed" and one.direction == 1)
-    # Continuous: the apex v²/2g grows by v/g for each unit of speed (SOURCES.md, section 1); the step changes it little.
+    # Continuous: the apex v²/2g grows by v/g for each unit of speed (SOURCES.md, section 1).
     assert up.changes[0].change == pytest.approx(5 * 637.5 / 1620, rel=0.03)
 
 

@@ -22,7 +22,7 @@ READER = Reader(Units("cm", {"tile": Fraction(64)}), FrameTime.WHOLE_MS_DOWN)
 
 @given(DECIMALS, st.decimals(min_value=Decimal("0.001"), max_value=50, places=3), st.integers(0, 300))
 def test_points_are_the_nearest_to_the_decimals(low: Decimal, every: Decimal, count: int) -> None:
-    """DEVELOPERS.md, brief: each is the binary64 nearest to the decimal from + i·every; Decimal is the twin."""
+    """Each is the binary64 nearest to the decimal from + i·every (Decimal is the twin)."""
     high = low + every * count
     points = range_points(Fraction(low), Fraction(high), Fraction(every))
     assert points == tuple(float(low + i * every) for i in range(count + 1))

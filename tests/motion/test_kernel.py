@@ -150,8 +150,10 @@ def fly(rule: Rule, gravity: float, speed: float, step: float, grain: float) -> 
 @pytest.mark.parametrize("mode", list(Mode))
 @pytest.mark.parametrize("q", [1.0, 0.25])
 def test_carried_remainder_loses_nothing(integrator: Integrator, at: Place, mode: Mode, q: float) -> None:
-    """SOURCES.md, section 9 (computed): v + e is the unrounded velocity, for ever; |e| is at most half a grain to
-    nearest, less than one otherwise. Exact in numbers that binary holds."""
+    """SOURCES.md, section 9 (computed): v + e is the unrounded velocity, for ever.
+
+    |e| is at most half a grain to nearest, less than one otherwise. Exact in numbers that binary holds.
+    """
     rule = codes(Rule(integrator, Rounding(mode, at, carry=True)))
     gravity, speed, step = 811.0, 270.25, 1 / 128
     numbers = (gravity, speed, q, 1.0, math.inf)
