@@ -14,7 +14,7 @@ class Fault:
     field: str
     """The dotted name of what is wrong: "search.gravity.every"; empty where no one key is to blame."""
     value: str
-    """What was found there, as written; empty where something is missing."""
+    """What was found there, as written; empty where the field is missing."""
     allowed: str
     """What may stand there, with its range and unit."""
     fix: str
@@ -22,6 +22,8 @@ class Fault:
 
     def __str__(self) -> str:
         what = " = ".join(part for part in (self.field, self.value) if part)
+        if self.field and not self.value:
+            what = f"{self.field} is missing"
         head = f"{self.place}: {what}" if what else self.place
         return f"{head}\n    allowed: {self.allowed}\n    fix: {self.fix}"
 

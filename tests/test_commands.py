@@ -97,7 +97,7 @@ def test_check_takes_settings(capsys: pytest.CaptureFixture[str]) -> None:
         ("gravty=1580", "gravity=1580"),
         ("gravity", "name=value"),
         ("gravity=much", "gravity"),
-        ("gravity=-5", "leave the sign away"),
+        ("gravity=-5", "drop the minus sign"),
         ("gravity=nan", "ordinary number"),
         ("step=8 ms", "no constant"),
     ],
@@ -109,6 +109,36 @@ def test_a_bad_setting_is_one_clear_message(
     captured = capsys.readouterr()
     assert words in captured.err
     assert captured.out == ""
+
+
+def test_a_step_that_nothing_says_is_asked_for(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    text = SMALL.replace('steps = "each-frame"\naim_at = "60 Hz"', 'steps = "fixed"')
+    text = text.replace("[search]", '[search]\nstep = { from = "8 ms", to = "16 ms", every = "4 ms" }')
+    brief = small(tmp_path, text, "fixed.toml")
+    assert main(["check", str(brief)]) == 2
+    assert "step is missing" in capsys.readouterr().err
+    for step in ("step=0.008", "step=8 ms", "step=125 Hz"):
+        main(["check", str(brief), "--set", step, "--json"])
+        assert json.loads(capsys.readouterr().out)["constants"]["step"] == 0.008
+
+
+def test_the_nearest_set_can_be_picked(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    main(["search", str(small(tmp_path, CLASH)), "--out", str(tmp_path), "--no-pictures", "--json"])
+    nearest = json.loads(capsys.readouterr().out)["nearest"]
+    for options in ([], ["--pick", "nearest"]):
+        assert main(["check", str(tmp_path / "small"), *options, "--json"]) == 1
+        assert json.loads(capsys.readouterr().out)["constants"] == nearest["constants"]
+    assert "nearest," in (tmp_path / "small" / "candidates.csv").read_text(encoding="utf-8")
+
+
+def test_a_pick_is_found_in_any_case(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    brief = small(tmp_path)
+    main(["search", str(brief), "--out", str(tmp_path), "--no-pictures", "--json"])
+    capsys.readouterr()
+    assert main(["check", str(tmp_path / "small"), "--pick", "a"]) == 0
+    capsys.readouterr()
+    assert main(["check", str(brief), "--pick", "A"]) == 2
+    assert "leapwright check results/small --pick A" in capsys.readouterr().err
 
 
 def test_an_unknown_pick_names_what_there_is(capsys: pytest.CaptureFixture[str]) -> None:

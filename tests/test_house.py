@@ -64,6 +64,15 @@ def test_check_starts_light(name: str) -> None:
     assert not {"matplotlib", "optuna", "scipy", "numba"} & loaded
 
 
+def test_check_stays_light_however_long_the_flights_are() -> None:
+    options = "'--set', 'launch_speed=3.5'"
+    loaded = modules_after(
+        f"from designer.cli import main; main(['check', 'objectives/low-gravity-salvage.toml', {options}])"
+    )
+    assert "numpy" in loaded
+    assert not {"matplotlib", "optuna", "scipy", "numba"} & loaded
+
+
 def test_importing_the_library_starts_light() -> None:
     assert not {"matplotlib", "optuna", "scipy", "numpy", "numba", "pydantic"} & modules_after(
         "import designer"

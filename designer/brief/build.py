@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from difflib import get_close_matches
 from typing import Any
 
 from designer.brief.choices import Path, Reader
@@ -71,7 +72,8 @@ class Builder:
 
     def _read_tables(self, units: Units) -> None:
         for section in ("loop", "rule"):
-            if section not in self.raw and "with" not in self.raw:
+            misspelled = get_close_matches(section, [key for key in self.raw if key not in KNOWN[""]], 1)
+            if section not in self.raw and not misspelled and "with" not in self.raw:
                 self.wrong.append(((section,), _MISSING[section]))
         context = Context(Reader(units, self._frame_time()))
         for section in (*TABLES, *LISTS):

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass
+from difflib import get_close_matches
 from fractions import Fraction
 
 from designer.brief.model import Choice
@@ -172,11 +173,6 @@ class Reader:
                 f"a range of at most {MOST_POINTS} points; this one has {count}",
                 fix=f"a larger increment, say every = {coarse}, or leave every out: no increments",
             )
-        if every > high - low > 0:
-            raise Misread(
-                f"an increment that is not larger than the range ({plain(high - low)})",
-                fix="a smaller every, or a single value",
-            )
         if not unit:
             return range_points(low, high, every)
         steps = {step_of(low + i * every, unit, self.frame_time) for i in range(count)}
@@ -197,7 +193,9 @@ def _unknown(table: Mapping[str, object], known: tuple[str, ...], allowed: str) 
             words = "not yet known in this version: a constant that follows another jump's"
             wrong.append(((key,), Misread(words, fix='write a value, a range, a list or "free"')))
         elif key not in known:
-            wrong.append(((key,), Misread(allowed, fix=f"take {key} out")))
+            close = get_close_matches(key.lower(), known, 1)
+            fix = f"{close[0]} is probably meant" if close else f"take {key} out"
+            wrong.append(((key,), Misread(allowed, fix=fix)))
     return wrong
 
 

@@ -146,6 +146,12 @@ def one_of(value: object, words: Iterable[str], later: Iterable[str] = ()) -> st
         raise Misread(f'"{value}" is {NOT_YET}; {allowed}', fix="choose one of these for now")
     spelled = value.strip().lower().replace("_", "-").replace(" ", "-")
     close = [spelled] if spelled in words else get_close_matches(spelled, words, 1, cutoff=0.5)
+    alike = [word for word in words if word.startswith(f"{spelled}-")]
+    if len(alike) > 1:
+        # "nearest" names several: to choose one for somebody would decide what their build does.
+        raise Misread(
+            allowed, fix="which of " + ", ".join(f'"{word}"' for word in alike) + " does the build do?"
+        )
     if close:
         raise Misread(allowed, better=f'"{close[0]}"')
     raise Misread(allowed, fix="write one of these")

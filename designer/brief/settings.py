@@ -4,12 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import replace
+from decimal import Decimal
 from difflib import get_close_matches
 from fractions import Fraction
 
-from designer.brief.choices import LIMITS
+from designer.brief.choices import LIMITS, Reader
 from designer.brief.model import Brief, Loop
-from designer.brief.rates import read_rate
 from designer.brief.units import Misread, Units
 from designer.errors import Fault, InputError
 from designer.motion.rule import CONSTANT_NAMES, Constants
@@ -36,19 +36,22 @@ def with_settings(brief: Brief, base: Constants | None, settings: Sequence[str])
             try:
                 found[name] = _read(brief, name, text)
             except Misread as misread:
-                fix = misread.fix or f"write {name}={misread.better}"
+                better = misread.better.strip('"')
+                fix = misread.fix or f"write {name}={better}"
                 faults.append(_fault(name, text, misread.allowed, fix))
-    wanted = ["gravity", "launch_speed", *(["step"] if brief.loop is Loop.FIXED else [])]
-    if not faults and base is None:
+    wanted = (
+        ("gravity", "launch_speed") if brief.loop is Loop.EACH_FRAME else ("gravity", "launch_speed", "step")
+    )
+    if not faults:
         faults += [
             _fault(
                 name,
                 "",
-                f"a value: the brief has no [today] that says what {name} is",
-                f"add --set {name}=…, or a [today] table to the brief",
+                f"a value; neither [today] nor [search] says what {name} is",
+                f"add --set {name}=…, or {name} to [today]",
             )
             for name in wanted
-            if name not in found
+            if found.get(name, None if base is None else getattr(base, name)) is None
         ]
     if faults:
         raise InputError(*faults)
@@ -64,19 +67,19 @@ def _fault(name: str, value: str, allowed: str, fix: str) -> Fault:
 
 def _read(brief: Brief, name: str, text: str) -> float | None:
     """Return one constant's value; None for no terminal speed. Misread says what is wrong."""
+    if name == "step" and brief.loop is Loop.EACH_FRAME:
+        raise Misread(
+            "nothing: this game steps once a frame, so the step is no constant",
+            fix="leave it out; [rates] says at which steps the constants are shown",
+        )
+    units = Units(brief.length_unit, {key: Fraction(value) for key, value in brief.lengths.items()})
+    try:
+        plain: object = Decimal(text)
+    except ArithmeticError:
+        plain = text
     if name == "step":
-        if brief.loop is Loop.EACH_FRAME:
-            raise Misread(
-                "nothing: this game steps once a frame, so the step is no constant",
-                fix="leave it away; [rates] says at which steps the constants are shown",
-            )
-        return read_rate(text, brief.rule.frame_time).step
+        return Reader(units, brief.rule.frame_time).step(plain)
     limits = LIMITS[name]
     if limits.none and text.lower() == "none":
         return None
-    units = Units(brief.length_unit, {key: Fraction(value) for key, value in brief.lengths.items()})
-    try:
-        plain: object = float(text)
-    except ValueError:
-        plain = text
     return float(limits.read(plain, units))

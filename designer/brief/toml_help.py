@@ -120,7 +120,7 @@ class Helper:
             single = [i for i, match in found if match[1] == "["]
             if single and len(found) > 1:
                 allowed = f"each of several {name} under its own header in double square brackets"
-                self._add(single[0], name, "", allowed, f"write [[{name}]] at each of them")
+                self._add(single[0], name, f"[{name}]", allowed, f"write [[{name}]] at each of them")
                 for index in single:
                     self.lines[index] = f"[[{name}]]"
 
@@ -138,7 +138,11 @@ class Helper:
                 elif table in seen:
                     allowed = f"each table once; [{table}] begins on line {seen[table] + 1} already"
                     self._add(
-                        statement.first, table, "", allowed, f"move these keys up to line {seen[table] + 1}"
+                        statement.first,
+                        table,
+                        f"[{table}]",
+                        allowed,
+                        f"move these keys up to line {seen[table] + 1}",
                     )
                     skipping = True
                 else:
@@ -219,7 +223,7 @@ def _goes_on(lines: list[str], last: int, open_marks: str, hangs: bool) -> bool:
     if open_marks[-1] != "{":
         return _PAIR.fullmatch(following) is None
     before = split_comment(lines[last])[0].rstrip()
-    return hangs or before.endswith((",", "{")) or following[0] in ",}"
+    return hangs or before.endswith((",", "{")) or following[0] in ",}" or not _open_marks(following, "{")
 
 
 def _closes(lines: list[str], last: int) -> bool:

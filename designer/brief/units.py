@@ -10,6 +10,8 @@ from decimal import Decimal
 from difflib import get_close_matches
 from fractions import Fraction
 
+from designer.motion.jumps import LONGEST_FLIGHT
+
 LARGEST = 10**12
 """No length, speed or time in a brief is larger, nor (unless it is 0) smaller than one over this."""
 
@@ -102,7 +104,7 @@ class Units:
             return self._read_text(value, kind)
         number = exact(value)
         if number is not None:
-            return number
+            return self._flown(number, kind)
         allowed = self.describe(kind)
         if isinstance(value, bool):
             raise Misread(allowed, fix="write a number here, not true or false")
@@ -128,8 +130,16 @@ class Units:
         if number is None:
             raise Misread(f"{allowed}; between 1e-12 and 1e12 in size (or 0)", fix="write an ordinary number")
         if not unit:
-            raise Misread(f"{allowed}; numbers stand without quotation marks", better=figures)
-        return number * self._factor(unit, kind, figures, allowed)
+            better = f'"{figures} ms"' if kind == "time" and number > LONGEST_FLIGHT else figures
+            raise Misread(f"{allowed}; a number without a unit stands without quotation marks", better=better)
+        return self._flown(number * self._factor(unit, kind, figures, allowed), kind)
+
+    def _flown(self, number: Fraction, kind: str) -> Fraction:
+        """Return the number; a time in which no jump is followed any more is a slip of its unit."""
+        if kind == "time" and number > LONGEST_FLIGHT:
+            words = f"{self.describe(kind)}, at most {LONGEST_FLIGHT:g} s: no jump is followed for longer"
+            raise Misread(words, better=f'"{plain(number)} ms"')
+        return number
 
     def _factor(self, unit: str, kind: str, figures: str, allowed: str) -> Fraction:
         """Return what one `unit` is in the brief's own unit."""
@@ -145,16 +155,27 @@ class Units:
             )
         names = ", ".join(name.replace("^2", "²") for name in known)
         words = f"{allowed}; units known here: {names}"
+        converted = self._converted(spelled, kind, figures)
+        if converted is not None:
+            raise Misread(f"{words}; {figures} {unit} is {converted} {self.unit_of(kind)}", better=converted)
+        base, _, per = spelled.partition("/")
         close = get_close_matches(spelled, known, 1)
-        if close and len(spelled) > 2:
+        if close and len(base) > 2 and base not in _MILLIMETRES:
             raise Misread(words, better=f'"{figures} {close[0]}"')
-        base = re.split(r"[/^]", spelled)[0]
-        if kind in _PER and base.isidentifier():
-            both = base in _MILLIMETRES and self.length in _MILLIMETRES
-            size = plain(Fraction(_MILLIMETRES[base], _MILLIMETRES[self.length])) if both else "…"
+        if kind in _PER and base.isidentifier() and f"/{per}".rstrip("/") == _PER[kind]:
             ways = f"write the number in {self.unit_of(kind)}, or say in [units] how long one is"
-            raise Misread(words, fix=f"{ways}: {base} = {size}")
+            raise Misread(words, fix=f"{ways}: {base} = …")
         raise Misread(words, fix="write the number in one of these units")
+
+    def _converted(self, spelled: str, kind: str, figures: str) -> str | None:
+        """Return the number in the brief's own unit, where both units are metric; None where they are not."""
+        base, _, per = spelled.partition("/")
+        seconds = {"": 1, "s": 1, "s^2": 1, "h": 3600, "min": 60}
+        ends = {"length": ("",), "speed": ("s", "min", "h"), "acceleration": ("s^2",)}.get(kind, ())
+        if base not in _MILLIMETRES or self.length not in _MILLIMETRES or per not in ends:
+            return None
+        size = Fraction(_MILLIMETRES[base]) / Fraction(_MILLIMETRES[self.length]) / seconds[per]
+        return plain(Fraction(Decimal(figures)) * size)
 
     def _known(self, kind: str) -> dict[str, Fraction]:
         """Return the units that may follow a number of this kind, as people type them."""
@@ -200,5 +221,5 @@ class Limits:
 
     def _way_out(self, number: Fraction) -> dict[str, str]:
         if number < 0:
-            return {"fix": f"leave the sign away: {plain(-number)}" if number != 0 else ""}
+            return {"fix": f"drop the minus sign: {plain(-number)}" if number != 0 else ""}
         return {"fix": "write a number above 0"}

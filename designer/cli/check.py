@@ -15,18 +15,38 @@ import click
 @click.option(
     "--pick", metavar="SET", help="Which set: today, a label such as B, a mark, or a name of [[sets]]."
 )
+@click.option(
+    "--objective",
+    "objective_paths",
+    metavar="FILE",
+    multiple=True,
+    type=click.Path(path_type=Path),
+    help="Count the terms of a Python file too. This runs the file.",
+)
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON document and nothing else.")
-def command(source: Path, settings: tuple[str, ...], pick: str | None, as_json: bool) -> int:
+def command(
+    source: Path,
+    settings: tuple[str, ...],
+    pick: str | None,
+    objective_paths: tuple[Path, ...],
+    as_json: bool,
+) -> int:
     """Show constants at every rate of a brief, which ledges and gaps hold, and the update rule read back.
 
     Exit status 1 where a ledge or gap fails or the jump never lands.
     """
-    from designer.cli.source import open_source, pick_set
+    from designer.cli.source import open_source, pick_set, terms_of
     from designer.objective.judge import judge
+    from designer.objective.modules import load_objective
 
     brief, document = open_source(source)
     name, constants = pick_set(source, brief, document, pick, settings)
-    verdict = judge(brief, constants)
+    objectives = [load_objective(path) for path in objective_paths]
+    if terms_of(document) and not objectives:
+        note = "The search counted terms of an objective module; name it with --objective to count them here."
+        click.echo(note, err=True)
+    # Plain Python throughout: most checks are done before a compiler would be loaded.
+    verdict = judge(brief, constants, compiled=False, objectives=objectives)
     if as_json:
         from designer.report.document import to_json, verdict_document
 

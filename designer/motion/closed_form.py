@@ -285,6 +285,7 @@ def _solve(block: Block, phase: Phase, notes: Notes) -> tuple[Landing, Bools, Fl
         k = 2.0 * above / (root - slope)
         if upward.any():
             k = np.where(upward, (slope + root) / phase.loss, k)
+    lost = np.isnan(k)  # 0/0: a fall that starts at the very height at which it would have landed
     earliest = np.maximum(np.floor(first / phase.loss) + 2.0, 1.0)  # the first step that moves down
     k = np.maximum(np.ceil(k), earliest)
     drop = -phase.h * phase.moving(k)
@@ -296,6 +297,7 @@ def _solve(block: Block, phase: Phase, notes: Notes) -> tuple[Landing, Bools, Fl
     if block.rule.landing_test is LandingTest.SWEPT:
         doubtful |= margin > SWEPT_NOISE * drop
     doubtful &= n <= LONGEST_FLIGHT / phase.h + 2.0
+    doubtful |= lost
     return Landing(n, before, drop, phase.v - phase.loss * k), doubtful, k
 
 
@@ -310,7 +312,7 @@ def _fall(block: Block, phase: Phase, loss: Floats, notes: Notes) -> Landing:
     if rows.size:
         part = notes.take(rows)
         landing.put(rows, _limited(block.take(rows), phase.take(rows), take(loss, rows), k[rows], part))
-        doubtful[rows] = part.flagged
+        doubtful[rows] |= part.flagged
     # A limit below what one step takes from v would already cut the step that crosses zero.
     too_low = block.gravity * block.step >= (1.0 - NEAR) * block.terminal_speed
     notes.flagged = notes.flagged | doubtful | too_low

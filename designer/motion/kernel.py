@@ -20,7 +20,9 @@ from __future__ import annotations
 import hashlib
 import math
 import os
+import signal
 import threading
+from contextlib import contextmanager
 from functools import cache
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeAlias
@@ -30,7 +32,7 @@ from designer.motion.jumps import LONGEST_FLIGHT, Status
 from designer.motion.rounding import snap, whole
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Sequence
+    from collections.abc import Callable, Iterator, Sequence
 
     import numpy as np
     from numpy.typing import NDArray
@@ -187,7 +189,7 @@ def fly_each(
 
 def compiled() -> Callable[..., None]:
     """Return `fly_each` as Numba compiles it; the first call imports Numba. Threads may call it at once."""
-    with _ONE_AT_A_TIME:
+    with _ONE_AT_A_TIME, _uninterrupted():
         return _compile()
 
 
@@ -204,6 +206,7 @@ def _compile() -> Callable[..., None]:
     name is a hash of every source that is compiled.
     """
     import numba
+    import numpy as np
     from numba.extending import register_jitable
 
     for function in (whole, snap, last_step, losses, _foreseen, _at_last, _flight, fly):
@@ -218,9 +221,29 @@ def _compile() -> Callable[..., None]:
         made: Callable[..., None] = numba.njit(cache=folder is not None, nogil=True, error_model="numpy")(
             fly_each
         )
+        numbers = tuple(np.ones(1) for _ in range(6))
+        kinds = (np.int8, np.int32, np.float64, np.int32, np.float64, np.float64, np.int32)
+        results = tuple(np.empty(1, dtype=kind) for kind in kinds)
+        made((0, 0, False, False, True, True, 0.0, 0.0, 0), numbers, 0.0, False, results)  # compiles it now
     finally:
         config.CACHE_DIR = before
     return made
+
+
+@contextmanager
+def _uninterrupted() -> Iterator[None]:
+    """Put Ctrl-C off until the block is done: in the midst of its work the compiler may lose it, or die."""
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+    asked: list[int] = []
+    before = signal.signal(signal.SIGINT, lambda number, frame: asked.append(number))
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, before)
+    if asked:
+        raise KeyboardInterrupt
 
 
 def _cache_folder(version: str, chosen: str) -> Path | None:

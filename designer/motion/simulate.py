@@ -70,8 +70,8 @@ def simulate(
 
     The result has the launches' broadcast shape and does not depend on `workers` or `compiled`. Where
     `compiled` is None, large work is compiled by Numba and small work runs as plain Python, unless compiled
-    code is there already. near_apex_steps
-    is −1 unless `count_near_apex`. Raises InputError where a number cannot be used.
+    code is there already. near_apex_steps is −1 unless `count_near_apex`. Raises InputError where a number
+    cannot be used.
     """
     columns = launches.broadcast()
     _validate(rule, launches, level, workers)

@@ -66,7 +66,7 @@ def sweep_rates(
         {level: values[where] for level, values in kin.airtimes.items()},
     )
     everywhere = Designs.of([constants] * len(hz))
-    return RateSweep(hz, steps, extremes(brief, kin, 0, (), scalars(brief, everywhere)))
+    return RateSweep(hz, steps, extremes(brief, kin, 0, (), scalars(brief, everywhere, constants)))
 
 
 def failing_bands(brief: Brief, sweep: RateSweep) -> tuple[tuple[tuple[str, ...], ...], tuple[str, ...]]:

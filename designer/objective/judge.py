@@ -68,7 +68,7 @@ def judge(
 
     kin = kinematics(brief, launches, compiled=compiled, names=OF_FLIGHT, fly=fly)
     supported = range(1, 1 + len(brief.rates.supported))
-    tables = extremes(brief, kin, 0, supported, scalars(brief, designs))
+    tables = extremes(brief, kin, 0, supported, scalars(brief, designs, constants))
     terms = {name: d for module in objectives for name, d in module.terms(designs, tables).items()}
     scores = score(brief, tables, terms)
     rows = _rate_rows(brief, constants, rates, kin, statuses[0.0][0])
@@ -95,7 +95,7 @@ def judge(
         feasible=bool(_feasible(scores)),
         ledges=tuple(features[: len(brief.ledges)]),
         gaps=tuple(features[len(brief.ledges) :]),
-        flags=find_flags(brief, constants, rows, stuck),
+        flags=find_flags(brief, constants, rows, features, stuck),
         extras={name: float(d[0]) for name, d in terms.items()},
     )
 
@@ -190,7 +190,7 @@ def _feature(
     """Return how a ledge or gap stands at its worst nominal or supported rate."""
     worst_spare, worst_rate = np.inf, None
     for column in range(1 + len(brief.rates.supported)):
-        for table in extremes(brief, kin, column, (), scalars(brief, Designs.of([constants]))):
+        for table in extremes(brief, kin, column, (), scalars(brief, Designs.of([constants]), constants)):
             if table.name not in feature.by:
                 continue
             if isinstance(feature, Ledge):

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import runpy
+import sys
 from collections.abc import Callable, Mapping, Sequence
+from contextlib import redirect_stdout
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -40,13 +42,14 @@ class ObjectiveModule:
         constants = {name: getattr(designs, name) for name in SEARCHABLE}
         jumps = {table.name: table.measures for table in tables}
         try:
-            found = dict(self.deviations(constants, jumps))
+            with redirect_stdout(sys.stderr):  # standard output may be a JSON document
+                found = dict(self.deviations(constants, jumps))
             count = len(designs.gravity)
             terms = {
                 f"{self.name}: {term}": np.broadcast_to(np.asarray(values, dtype=np.float64), (count,))
                 for term, values in found.items()
             }
-        except Exception as error:  # whatever a person's own code raises
+        except (Exception, SystemExit) as error:  # whatever a person's own code raises
             raise self._fault(f"{type(error).__name__}: {error}") from error
         lands = np.logical_and.reduce([table.lands for table in tables])
         for term, values in terms.items():
@@ -79,8 +82,9 @@ def load_objective(path: Path) -> ObjectiveModule:
     if not path.is_file():
         raise fault("no such file", "name a file; objectives/on_the_beat.py is one to start from")
     try:
-        space = runpy.run_path(str(path))
-    except Exception as error:
+        with redirect_stdout(sys.stderr):
+            space = runpy.run_path(str(path))
+    except (Exception, SystemExit) as error:
         raise fault(f"{type(error).__name__}: {error}", "make the file run by itself") from error
     function = space.get("deviations")
     if not callable(function):

@@ -48,6 +48,15 @@ _POWERS = np.array([float(f"1e{k}") for k in range(301)])
 """Powers of ten by exponent, each the nearest double: a power function may be off in its last bit."""
 
 
+NOISE = 1e-10
+"""A miss, spread or cost below this many tolerances is what floats leave of nothing, and counts as 0."""
+
+
+def _compared(values: Floats, lands: NDArray[np.bool_]) -> Floats:
+    """Return a miss, spread or cost as it is compared: no noise, nine digits, NaN without a landing."""
+    return nine_digits(np.where(lands, np.where(values < NOISE, 0.0, values), np.nan))
+
+
 def nine_digits(values: Floats) -> Floats:
     """Round to nine significant digits, so that noise in the last bits decides nothing."""
     values = np.asarray(values, dtype=np.float64)
@@ -76,9 +85,8 @@ def deviation(target: Target, measure: Extremes) -> Floats:
 
 
 def spread_of(measure: Extremes) -> Floats:
-    """Return largest less smallest over the rates, in the measure's unit; 0 where both are infinite."""
-    with np.errstate(invalid="ignore"):
-        return np.where(measure.high == measure.low, 0.0, measure.high - measure.low)
+    """Return largest less smallest over the rates, in the measure's unit."""
+    return measure.high - measure.low
 
 
 def ledge_spare(ledge: Ledge, jump: JumpTable) -> Floats:
@@ -171,9 +179,9 @@ def score(brief: Brief, tables: Sequence[JumpTable], extra_terms: Terms | None =
     lands = np.logical_and.reduce([table.lands for table in tables])
     cost = miss + brief.rates.spread_weight * spread
     return Scores(
-        miss=nine_digits(np.where(lands, miss, np.nan)),
-        rate_spread=nine_digits(np.where(lands, spread, np.nan)),
-        cost=nine_digits(np.where(lands, cost, np.nan)),
+        miss=_compared(miss, lands),
+        rate_spread=_compared(spread, lands),
+        cost=_compared(cost, lands),
         violation=nine_digits(np.where(lands, violation, np.inf)),
         worst=nine_digits(np.where(lands, worst, np.nan)),
         shortfalls=np.where(lands[:, None], shortfalls, np.inf),

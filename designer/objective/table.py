@@ -165,7 +165,11 @@ def kinematics(
     for level in levels:
         down = fly(rule, launches, level, workers=workers, compiled=compiled)
         airtimes[level] = np.asfortranarray(of_flight("airtime", rule, launches, down))
-    lands = np.asfortranarray(flown.status == Status.LANDS)
+    lands = flown.status == Status.LANDS
+    for level in levels:
+        # A far side below that is not reached in the longest flight: nobody can say how wide a gap that is.
+        lands = lands & ~np.isnan(airtimes[level]) if level < 0.0 else lands
+    lands = np.asfortranarray(lands)
     return Kinematics(np.asarray(launches.step, dtype=np.float64), lands, flight, airtimes)
 
 
@@ -190,7 +194,7 @@ def _gap_extremes(
         airtime = kin.airtimes[level][:, column]
         reach = max_gap(airtime, run, edge)
         sure = sure_gap(reach, run, steps[:, column])
-        away = np.isnan(airtime) & (level != 0.0)
+        away = np.isnan(airtime) & (level > 0.0)
         reaches.append(np.where(away, 0.0, reach))
         sures.append(np.where(away, 0.0, sure))
     at = list(columns).index(nominal)
@@ -226,12 +230,15 @@ def extremes(
 
 
 def _flip_margins(brief: Brief, kin: Kinematics, columns: Sequence[int], constants: Scalars) -> Extremes:
-    """Return the flip margin, one number a design; where rounding never flips, infinitely far away."""
+    """Return the flip margin, one number a design; where rounding never flips, the whole of gravity.
+
+    Farther than that gravity cannot move, so a target on the margin has a finite deviation there too.
+    """
     designs, count = kin.lands.shape
     steps = np.broadcast_to(kin.steps, (designs, count))[:, columns]
     g, q, factor = (np.asarray(constants[name]) for name in ("gravity", "grain", "fall_factor"))
     margin = np.broadcast_to(flip_margin(brief.rule, g, q, factor, steps), (designs,))
-    margin = np.where(np.isnan(margin), np.inf, margin)
+    margin = np.where(np.isnan(margin), g, margin)
     return Extremes(margin, margin, margin)
 
 
@@ -251,9 +258,12 @@ def design_tables(
     return extremes(brief, kin, 0, range(1, len(supported) + 1), scalars(brief, designs))
 
 
-def scalars(brief: Brief, designs: Designs) -> Scalars:
-    """Return what `extremes` wants to know of designs beside their flight."""
-    step_up, edge_allowance = fixed_lengths(brief)
+def scalars(brief: Brief, designs: Designs, one: Constants | None = None) -> Scalars:
+    """Return what `extremes` wants to know of designs beside their flight.
+
+    step_up and edge_allowance are the brief's, or those of `one` set that is judged by itself.
+    """
+    step_up, edge_allowance = fixed_lengths(brief) if one is None else (one.step_up, one.edge_allowance)
     return {
         "run_speed": designs.run_speed,
         "step_up": step_up,

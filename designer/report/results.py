@@ -14,7 +14,6 @@ from designer.brief.model import Brief
 from designer.errors import Fault, InputError
 from designer.motion.measures import MEASURES
 from designer.motion.rule import CONSTANT_NAMES
-from designer.objective.verdict import Verdict
 from designer.report.document import DIGITS, search_document, to_json
 from designer.search.result import Candidate, SearchResult
 
@@ -58,8 +57,8 @@ def _csv_row(name: str, candidate: Candidate) -> dict[str, object]:
         "feasible": verdict.feasible,
     }
     for jump in verdict.jumps:
-        row |= {f"{jump.name}.{measure}": jump.nominal.measures[measure] for measure in MEASURES}
-        row |= {f"{jump.name}.{measure}.spread": value for measure, value in jump.spreads.items()}
+        row |= {f"{jump.name}.nominal.{measure}": jump.nominal.measures[measure] for measure in MEASURES}
+        row |= {f"{jump.name}.spread.{measure}": value for measure, value in jump.spreads.items()}
     for feature in (*verdict.ledges, *verdict.gaps):
         row[f"{feature.name}.spare"] = feature.spare
         row[f"{feature.name}.worst_rate"] = feature.worst_rate
@@ -68,11 +67,13 @@ def _csv_row(name: str, candidate: Candidate) -> dict[str, object]:
 
 
 def named(result: SearchResult) -> Iterator[tuple[str, Candidate]]:
-    """Yield today, the sets that people brought, and the shortlist, each with its name."""
+    """Yield today, the sets that people brought, and the shortlist or the nearest, each with its name."""
     if result.today is not None:
         yield "today", result.today
     for one in (*result.sets, *result.shortlist):
         yield one.label or "", one
+    if result.nearest is not None:
+        yield "nearest", result.nearest
 
 
 def candidates_csv(candidates: Iterable[tuple[str, Candidate]]) -> str:
@@ -145,19 +146,3 @@ def write_results(
             (folder / FIGURES).mkdir()
             make_pictures(brief, result, folder / FIGURES)
     return final
-
-
-def find_pick(document: object, pick: str) -> object:
-    """Return the candidate of a read candidates.json that has this label, name or mark; None without one."""
-    if not isinstance(document, dict):
-        return None
-    if pick == "today":
-        return document.get("today")
-    for part in ("shortlist", "sets", "front"):
-        for one in document.get(part, []):
-            if pick in (one["label"], one["mark"], f"{one['label']}·{one['mark']}"):
-                return one
-    return None
-
-
-__all__ = ["Verdict", "candidates_csv", "find_pick", "free_name", "named", "write_results", "write_whole"]

@@ -147,8 +147,10 @@ def _why(label: str, candidate: Candidate) -> tuple[Text, Text]:
     """Return the line on one candidate: label and mark, then the reason and what to mind."""
     name = Text(f"{label}·{candidate.verdict.mark}", style=TERMINAL["best"])
     reason = Text(candidate.why)
-    if candidate.verdict.flags:
-        reason.append(f" ({'; '.join(candidate.verdict.flags)})", style=TERMINAL["quiet"])
+    # That a rule is stepped is the same for every candidate: check says it, here it would only be noise.
+    flags = [flag for flag in candidate.verdict.flags if not flag.startswith("no closed form")]
+    if flags:
+        reason.append(f" ({'; '.join(flags)})", style=TERMINAL["quiet"])
     return name, reason
 
 
@@ -181,7 +183,7 @@ def print_search(brief: Brief, result: SearchResult, folder: Path, console: Cons
     out.print()
     for clash in result.clashes:
         out.print(Text(f"Nothing is feasible: {clash.text}", style=TERMINAL["off"]))
-        for demand in clash.demands:
+        for demand in clash.demands if len(clash.demands) > 1 else ():
             out.print(Text(f"  · {demand}"))
     for note in result.notes:
         out.print(Text(note))

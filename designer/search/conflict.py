@@ -42,20 +42,20 @@ def least_sums(shortfalls: NDArray[np.float64], sets: Sequence[Sequence[int]]) -
 
 
 def clashing_sets(patterns: Collection[int], features: int) -> list[tuple[int, ...]]:
-    """Return the smallest sets of features that no design fulfils together.
+    """Return the smallest sets of features that no design fulfils together, smallest first.
 
-    All sets of the smallest size that has any; where even three never clash by themselves, the set of all
-    features that fail somewhere.
+    A set that holds another clashing set is left out. Where even three never clash by themselves, it is the
+    set of all features that fail somewhere.
     """
+    found: list[tuple[int, ...]] = []
     for size in range(1, LARGEST_SET + 1):
-        found = [
+        found += [
             one
             for one in combinations(range(features), size)
             if all(pattern & sum(1 << k for k in one) for pattern in patterns)
+            and not any(set(smaller) <= set(one) for smaller in found if len(smaller) < size)
         ]
-        if found:
-            return found
-    return [tuple(k for k in range(features) if any(pattern >> k & 1 for pattern in patterns))]
+    return found or [tuple(k for k in range(features) if any(pattern >> k & 1 for pattern in patterns))]
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,15 +128,16 @@ def _clash(demands: Sequence[_Demand], over_rates: float, proved: bool) -> Clash
     short_by = float(nine_digits(np.array(short_by)))
     names = _joined([demand.feature.name for demand in demands])
     bounds = _joined([demand.words(places) for demand in demands])
-    over = f"about {over_rates:.{places}f} over the rates"
     if len(demands) == 1:
-        text = f"{names}: {demands[0].what} {bounds} is out of reach of this search: short by {over}"
+        least = f"short by {over_rates:.{places}f} or more at some rate"
+        text = f"{names}: {demands[0].what} {bounds} cannot hold: every design of this search is {least}"
     else:
         holds = "cannot both hold" if len(demands) == 2 else "cannot all hold"
+        over = f"about {over_rates:.{places}f} over the rates"
         short = f"short by {short_by:.{places}f}, {over}" if short_by else f"short by {over}"
         text = f"{names}: {bounds} {holds}: {short}"
     if not proved:
-        text += " in the best design tried"
+        text += " (of those tried)"
     return Clash(tuple(demand.sentence(places) for demand in demands), short_by, over_rates, text)
 
 

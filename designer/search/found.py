@@ -54,7 +54,8 @@ def by_scan(brief: Brief, space: Space, *, workers: int, progress: Progress) -> 
             return least_shortfalls(brief, space, sets, workers=workers, progress=progress)
 
         clashes = find_clashes(brief, done.failing, least, proved=True)
-    note = f"Scanned all {done.evaluated:,} designs of the grid: no point of it does better than the best."
+    proved = "no point of it does better than the best" if len(done.leaders.feasible) else "none is feasible"
+    note = f"Scanned all {done.evaluated:,} designs of the grid: {proved}."
     return Found(done.leaders, space.designs, done.evaluated, done.certificate, clashes, "scan", (note,))
 
 

@@ -19,7 +19,7 @@ from designer.objective.verdict import Verdict
 from designer.search.found import Found
 from designer.search.ranking import Leaders, Rows, join
 from designer.search.result import Candidate, SearchResult
-from designer.search.shortlist import FEWEST, LOOKS, NOTICED, Options, Pick, against, choose, trade
+from designer.search.shortlist import FEWEST, LOOKS, NOTICED, Options, Pick, against, choose, differs, trade
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -112,8 +112,9 @@ class _Proposals:
             reasons = [why for why, at in always.items() if at == pick.option]
             why = self._why(options, pick, picks[0].option, reasons, designs)
             constants = designs.constants(pick.option, self.brief)
-            listed.append(self._with_ties(self.candidate(constants, letter, why)))
-        return listed, self._remarks(len(listed), bool(len(leaders.numbers)))
+            listed.append(self.candidate(constants, letter, why))
+        apart = _apart(options.looks, [pick.option for pick in picks])
+        return listed, self._remarks(apart, bool(len(leaders.numbers)))
 
     def _looks(self, designs: Designs) -> NDArray[np.float64]:
         """Return what a designer notices of each design, (designs, 6); measures of the first jump."""
@@ -146,28 +147,34 @@ class _Proposals:
         without = float(score(self.brief, design_tables(self.brief, bare)).cost[0])
         if not without > LUCKY * cost:
             return ""
-        return f"; by luck of rounding: with grain 0 the same numbers cost {without:.3g}, not {cost:.3g}"
-
-    def _with_ties(self, candidate: Candidate) -> Candidate:
-        ties = [flag for flag in candidate.verdict.flags if flag.startswith("tie")]
-        if not ties:
-            return candidate
-        return replace(candidate, why=f"{candidate.why}; careful: {', '.join(ties)}")
+        spared = f"with grain 0 the same numbers would cost {without:.3g}, not {cost:.3g}"
+        return f"; rounding happens to help: {spared}"
 
     def _remarks(self, count: int, has_numbers: bool) -> list[str]:
         said = []
         if count < FEWEST:
-            noun = "candidate" if count == 1 else "candidates"
             said.append(
-                f"Only {count} {noun}: nothing else that is nearly as good differs by more than "
-                f"{NOTICED:.0%} in {', '.join(LOOKS[:-1])} or {LOOKS[-1]}."
+                f"Fewer than {FEWEST} candidates differ by more than {NOTICED:.0%} in "
+                f"{', '.join(LOOKS[:-1])} or {LOOKS[-1]}: nothing else that is nearly as good does."
             )
         if self.brief.today is not None and not has_numbers:
+            nothing = (
+                "Nothing that this search may use" if self.found.certificate else "Nothing that was tried"
+            )
             said.append(
-                "Nothing that this search may use keeps today's step and grain and every ledge and gap, so "
-                "no candidate changes numbers only."
+                f"{nothing} keeps today's step and grain and every ledge and gap, so no candidate changes "
+                "numbers only."
             )
         return said
+
+
+def _apart(looks: NDArray[np.float64], picks: Sequence[int]) -> int:
+    """Return how many of some designs a designer could tell from one another, counted in their order."""
+    kept: list[int] = []
+    for pick in picks:
+        if not kept or bool(differs(looks[[pick]], looks[kept])[0]):
+            kept.append(pick)
+    return len(kept)
 
 
 def propose(

@@ -25,8 +25,6 @@ NEARLY_AS_GOOD = 1.5
 """A design off target counts as nearly as good as the best up to so many times its cost."""
 ON_TARGET_SLACK = 1.0
 """A design on target counts as nearly as good up to so many tolerances more in cost."""
-NOISE = 1e-10
-"""A miss, spread or cost below this many tolerances is what floats leave of nothing."""
 CELL = 1.025
 """Designs whose constants all lie within this factor share a cell of the pool, which keeps the cheapest."""
 
@@ -63,7 +61,7 @@ class Rows:
     @property
     def on_target(self) -> Mask:
         """Whether it is feasible and no deviation is beyond its tolerance, to nine significant digits."""
-        return np.asarray(self.feasible & (self.worst <= 1.0 + 5e-9))
+        return np.asarray(self.feasible & (self.worst <= 1.0))
 
     @property
     def rank(self) -> Floats:
@@ -88,15 +86,10 @@ NO_ROWS = Rows(
 
 
 def rows_of(scores: Scores, index: Ints, numbers: Mask, cell: Ints) -> Rows:
-    """Return scored designs as rows; miss, spread and cost that are but float noise become 0.
-
-    Nine significant digits do not see that 7e-15 is a spread of nothing, yet a front of such pairs would be
-    one of noise.
-    """
-    miss, spread, cost = (
-        np.where(values < NOISE, 0.0, values) for values in (scores.miss, scores.rate_spread, scores.cost)
+    """Return scored designs as rows."""
+    return Rows(
+        index, scores.miss, scores.rate_spread, scores.cost, scores.violation, scores.worst, numbers, cell
     )
-    return Rows(index, miss, spread, cost, scores.violation, scores.worst, numbers, cell)
 
 
 def cells(*constants: Floats) -> Ints:

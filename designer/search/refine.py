@@ -174,7 +174,7 @@ def refine(evaluator: Evaluator, *, seed: int, progress: Progress | None = None)
     if scores.feasible[chosen] and not evaluator.space.is_grid:
         best = int(np.argmin(ranks))
         text += (
-            f"; tidied to {_say(matrix[chosen])} at cost {ranks[chosen]:.4g}"
+            f"; tidied to {_say(matrix[chosen])} at cost {ranks[chosen]:.4g} (untidy: {ranks[best]:.4g})"
             if chosen != best
             else "; no tidier numbers cost as little"
         )

@@ -53,7 +53,7 @@ class Clash:
     short_by: float
     """By how much the demands contradict each other as written; 0 where only the rates make them clash."""
     short_over_rates: float
-    """By how much the best design still falls short over the rates, length."""
+    """The least sum of these shortfalls over the rates that any design reaches, length."""
     text: str
     """One sentence for a person."""
 

@@ -35,7 +35,10 @@ def reason_to_study(
     layout = plan(brief, space)
     flights = layout.flights * len(layout.steps)
     if flights > RATES_PER_DESIGN * budget:
-        return f"the grid takes {flights:,} jumps, more than {RATES_PER_DESIGN} a design of the budget"
+        return (
+            f"its {space.size:,} designs take {flights:,} jumps over {len(layout.steps)} steps, more than "
+            f"{RATES_PER_DESIGN * budget:,} ({RATES_PER_DESIGN} times --budget)"
+        )
     steps = steps_to_simulate(brief, layout)
     if steps > MOST_STEPS:
         return f"this rule has no closed form, and stepping the grid takes about {steps:.2g} steps"

@@ -9,8 +9,9 @@ import numpy as np
 import pytest
 
 from designer.motion.closed_form import closed_form
-from designer.motion.jumps import Status
+from designer.motion.jumps import Launches, Status
 from designer.motion.rule import Integrator, LandingTest, Mode, Place, Rounding, Rule
+from designer.motion.simulate import simulate
 from tests.reference import trade_case
 from tests.reference.launches import launches_of
 
@@ -174,3 +175,26 @@ def test_case_to_know() -> None:
     assert found.apex[~flagged] == pytest.approx(np.array(printed)[~flagged], abs=0.05)
     assert flagged.sum() <= 1
     assert closed_form(Rule(Integrator.SEMI_IMPLICIT), launches_of(1600.0, 620.0, 1 / 128, 1.0))[1]
+
+
+@pytest.mark.parametrize("tolerance", [0.0, 1e-3, 1.0])
+def test_a_fall_from_the_very_height_of_landing_is_left_to_the_kernel(tolerance: float) -> None:
+    """Apex 50 exactly (v²/2g), level 50 − tolerance: the fall starts where it would have landed."""
+    rule = Rule(Integrator.AVERAGE, Rounding(at=Place.BEFORE_MOVE), contact_tolerance=tolerance)
+    many = Launches(1600.0, 400.0, 0.01, np.array([0.0, 1.0]), np.array([2.0, 1.0]), np.inf)
+    found, flagged = closed_form(rule, many, 50.0 - tolerance)
+    stepped = simulate(rule, many, 50.0 - tolerance)
+    assert (flagged | (found.status == stepped.status)).all()
+    assert (flagged | (found.steps == stepped.steps)).all()
+
+
+def test_doubt_before_the_terminal_speed_is_not_forgotten() -> None:
+    rule = Rule(
+        Integrator.SEMI_IMPLICIT,
+        Rounding(Mode.DOWN, Place.BEFORE_MOVE),
+        launch_gravity=False,
+        contact_tolerance=0.0,
+    )
+    one = Launches(11.15, 3.15, 0.025, 1.0, 1.5573784124192578, 2.5)
+    found, flagged = closed_form(rule, one)
+    assert flagged or found.steps == simulate(rule, one).steps

@@ -96,7 +96,7 @@ def test_a_set_that_never_lands_says_so() -> None:
 def test_ties_are_flagged() -> None:
     # 1600 · 1/128 s is 12.5 grains: the design's known case of a perfect tie.
     brief = replace(BRIEF, rates=replace(BRIEF.rates, supported=(Rate("128 Hz", 1 / 128),)))
-    assert "tie at 7.8125 ms" in judge(brief, TODAY, bands=False).flags
+    assert "tie at 128 Hz" in judge(brief, TODAY, bands=False).flags
 
 
 def test_a_faster_machine_that_jumps_higher_is_a_finding() -> None:
@@ -114,6 +114,41 @@ def test_a_fixed_loop_aims_at_the_constants_own_step() -> None:
     brief = replace(BRIEF, loop=Loop.FIXED, aim_at=None)
     verdict = judge(brief, replace(TODAY, step=0.008), bands=False)
     assert verdict.jumps[0].nominal.step == 0.008
+
+
+def test_step_up_and_edge_allowance_of_the_judged_set_count() -> None:
+    plain = judge(BRIEF, TODAY)
+    helped = judge(BRIEF, replace(TODAY, step_up=5.0, edge_allowance=7.0))
+    assert helped.ledges[0].spare == pytest.approx((plain.ledges[0].spare or 0.0) + 5.0)
+    assert helped.gaps[0].spare == pytest.approx((plain.gaps[0].spare or 0.0) + 7.0)
+    assert helped.ledges[0].failing != plain.ledges[0].failing
+
+
+def test_a_flip_margin_that_nothing_bounds_is_the_whole_of_gravity() -> None:
+    for target, missed in ((Target("flip_margin", within=1.0, at_least=5.0), False),
+                           (Target("flip_margin", within=1.0, aim=5.0), True)):  # fmt: skip
+        verdict = judge(brief_of(target, rule=RULE, rates=RATES), replace(TODAY, grain=0.0), bands=False)
+        assert verdict.jumps[0].nominal.measures["flip_margin"] is None
+        assert verdict.miss == pytest.approx(1595.0 if missed else 0.0)
+
+
+def test_noise_alone_decides_where_v_comes_to_zero_on_a_step() -> None:
+    brief = brief_of(rates=(Rate("10 ms", 0.01),))
+    flags = judge(brief, Constants(1000.0, 300.0, fall_factor=2.0), bands=False).flags
+    assert any("v comes to 0 after 30 whole steps of 10 ms" in flag for flag in flags)
+    assert not any("noise" in flag for flag in judge(brief, Constants(1000.0, 303.0, fall_factor=2.0)).flags)
+
+
+def test_demands_that_fail_between_the_supported_rates_are_named() -> None:
+    # The sample's best set that changes numbers only: fine at every listed rate, not at 5 ms.
+    flags = judge(BRIEF, replace(TODAY, gravity=1460.0, launch_speed=595.0)).flags
+    assert "between the supported rates billboard fails at 167–200 Hz" in flags
+
+
+def test_a_far_side_below_that_is_never_reached_is_no_gap_of_nothing() -> None:
+    slow = replace(TODAY, gravity=200.0, launch_speed=50.0, grain=0.0, terminal_speed=8.0, run_speed=5.0)
+    brief = replace(BRIEF, ledges=(), gaps=(Gap("pit", 10.0, "stay-out", -300.0),))
+    assert not judge(brief, slow, bands=False).feasible
 
 
 def test_band_names_join_neighbours() -> None:

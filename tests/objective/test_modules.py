@@ -34,6 +34,7 @@ def test_the_shipped_module_finds_the_beat() -> None:
         ("x = 1", "defines no deviations"),
         ("def deviations(", "SyntaxError"),
         ("raise ValueError('no')", "ValueError: no"),
+        ("import sys; sys.exit(0)", "SystemExit: 0"),
     ],
 )
 def test_what_is_no_module_is_refused(tmp_path: Path, text: str, words: str) -> None:
@@ -49,7 +50,7 @@ def test_a_missing_file_is_refused(tmp_path: Path) -> None:
 
 
 @pytest.mark.parametrize("body", ["return {'a': constants['nothing']}", "return {'a': [float('nan')]}",
-                                  "return {'a': [1.0, 2.0, 3.0]}"])  # fmt: skip
+                                  "return {'a': [1.0, 2.0, 3.0]}", "raise SystemExit"])  # fmt: skip
 def test_a_module_that_fails_is_named(tmp_path: Path, body: str) -> None:
     path = tmp_path / "broken.py"
     path.write_text(f"def deviations(constants, jumps):\n    {body}\n")
@@ -57,6 +58,18 @@ def test_a_module_that_fails_is_named(tmp_path: Path, body: str) -> None:
     designs = Designs.of([Constants(1000.0, 340.0), Constants(1000.0, 350.0)])
     with pytest.raises(InputError, match="objective module broken"):
         module.terms(designs, design_tables(brief_of(), designs))
+
+
+def test_what_a_module_prints_stays_out_of_standard_output(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = tmp_path / "chatty.py"
+    path.write_text(
+        "print('loading')\ndef deviations(constants, jumps):\n    print('here')\n    return {'a': 0}\n"
+    )
+    designs = Designs.of([Constants(1000.0, 340.0)])
+    load_objective(path).terms(designs, design_tables(brief_of(), designs))
+    assert capsys.readouterr().out == ""
 
 
 def test_a_scalar_term_counts_for_every_design(tmp_path: Path) -> None:

@@ -82,7 +82,7 @@ def test_csv_and_json_say_the_same(tmp_path: Path) -> None:
             value = one["constants"][name]
             assert row[name] == ("" if value is None else f"{value:.12g}")
         assert float(row["cost"]) == pytest.approx(one["cost"], rel=1e-11)
-        assert float(row["jump.apex"]) == pytest.approx(one["jumps"][0]["nominal"]["apex"], rel=1e-11)
+        assert float(row["jump.nominal.apex"]) == pytest.approx(one["jumps"][0]["nominal"]["apex"], rel=1e-11)
     assert (folder / "brief.toml").read_bytes() == b"title = 'x'\n"
 
 

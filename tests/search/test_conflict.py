@@ -188,7 +188,7 @@ def test_a_study_says_that_it_only_tried() -> None:
     result = search(replace(brief, search=ranged), trials=48)
     clash = only_clash(result)
     assert clash.short_by == 1.0
-    assert clash.text.endswith("in the best design tried")
+    assert clash.text.endswith("(of those tried)")
     assert result.certificate is None
     assert result.nearest is not None
 
@@ -198,3 +198,14 @@ def test_feasible_briefs_have_no_clashes() -> None:
     assert result.clashes == ()
     assert result.nearest is None
     assert result.best is not None
+
+
+def test_a_pair_is_told_beside_a_demand_that_nothing_meets() -> None:
+    """Patterns as bits: demand 2 fails always; 0 and 1 never hold together; 0, 1 and 2 is not told again."""
+    assert clashing_sets({0b101, 0b110}, 3) == [(2,), (0, 1)]
+    far = Gap("hallway", 900.0, "cross")
+    result = search(rough(ledges=(REACH, STAY_OUT), gaps=(far,)))
+    texts = [clash.text for clash in result.clashes]
+    assert len(texts) == 2
+    assert any(text.startswith("hallway: gap at least 900.0 cannot hold") for text in texts)
+    assert any("at least 120.0 and at most 119.0 cannot both hold: short by 1.0" in text for text in texts)
