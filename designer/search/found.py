@@ -14,8 +14,8 @@ from designer.objective.table import Designs
 from designer.search.conflict import failing_patterns, find_clashes, least_sums
 from designer.search.evaluate import Evaluator, designs_of, pick
 from designer.search.progress import Progress
-from designer.search.ranking import Leaders, Rows, absorb, join, rows_of
-from designer.search.refine import GENERATIONS, POPULATION, STARTS, TIDIER, refine
+from designer.search.ranking import Leaders, absorb, rows_of
+from designer.search.refine import GENERATIONS, POPULATION, STARTS, TIDIED, TIDIER, refine, tidy_designs
 from designer.search.result import Certificate, Clash
 from designer.search.scan import cells_of, least_shortfalls, only_numbers, scan
 from designer.search.space import Space
@@ -70,23 +70,28 @@ def by_study(
     progress: Progress,
 ) -> Found:
     """Let Optuna search and SciPy refine; all designs that they tried are ranked like a scan's."""
-    expected = trials + STARTS * (POPULATION * GENERATIONS + TIDIER)
+    expected = trials + STARTS * POPULATION * GENERATIONS + TIDIED * TIDIER
     evaluator = Evaluator(brief, space, objectives, workers, expected)
-    said = run_study(evaluator, seed=seed, trials=trials, progress=progress)
-    chosen, refined = refine(evaluator, seed=seed, progress=progress)
+    said = [run_study(evaluator, seed=seed, trials=trials, progress=progress)]
+    said.append(refine(evaluator, seed=seed, progress=progress))
+    tidy = np.zeros((0, len(space.axes)))
+    if not space.is_grid:
+        tidy = tidy_designs(evaluator, progress)
     matrix, scores = evaluator.everything()
     tried = pick(scores, np.isfinite(scores.violation))
     keep = np.ones(len(matrix), dtype=bool)
-    if scores.feasible[chosen] and not space.is_grid:
-        # What is a hair cheaper than the tidy proposal is the same proposal with more figures.
-        keep = ~(scores.feasible & (scores.cost < scores.cost[chosen]))
+    if len(tidy):
+        # Only tidy designs are proposed: what costs a hair less is the same with figures that nobody can say.
+        keep = (matrix[:, None, :] == tidy[None, :, :]) | (np.isnan(matrix)[:, None, :] & np.isnan(tidy))
+        keep = keep.all(axis=2).any(axis=1)
     designs = designs_of(matrix[keep])
-    numbers = only_numbers(brief, designs)
-    rows = rows_of(pick(scores, keep), np.flatnonzero(keep), numbers, cells_of(designs))
+    rows = rows_of(pick(scores, keep), np.flatnonzero(keep), only_numbers(brief, designs), cells_of(designs))
     leaders = absorb(Leaders(), rows)
-    leading = rows.take((rows.index == chosen) & rows.feasible)
-    if len(leading) and not space.is_grid:
-        leaders = _led_by(leaders, leading)
+    if len(tidy):
+        untidy = float(np.min(scores.cost[scores.feasible]))
+        said.append(
+            f"Put back onto tidy numbers: the best costs {leaders.best_cost:.4g}, untidy {untidy:.4g}."
+        )
     clashes: tuple[Clash, ...] = ()
     if not len(leaders.feasible):
         clashes = find_clashes(
@@ -99,16 +104,5 @@ def by_study(
         None,
         clashes,
         "study",
-        (said, refined),
+        tuple(said),
     )
-
-
-def _led_by(leaders: Leaders, leading: Rows) -> Leaders:
-    """Put the tidy proposal before designs that equal it (with a run speed that nothing asks about, say)."""
-    others = leaders.feasible.take(leaders.feasible.index != leading.index[0])
-    changes = {"feasible": join([leading, others]).take(slice(0, 2))}
-    if leading.numbers[0] and leading.cost[0] <= leaders.numbers.cost[0]:
-        changes["numbers"] = leading
-    if leading.on_target[0] and leading.spread[0] <= leaders.steady.spread[0]:
-        changes["steady"] = leading
-    return replace(leaders, **changes)

@@ -92,7 +92,8 @@ class _Proposals:
         """Return the shortlisted candidates, A first, and what to say about the list."""
         leaders = self.found.leaders
         steady, steady_why = steadiest(leaders)
-        must = {"lowest cost": leaders.feasible.take(np.array([0])), steady_why: steady}
+        lowest = "lowest cost" if self.found.certificate else "lowest cost found"
+        must = {lowest: leaders.feasible.take(np.array([0])), steady_why: steady}
         if len(leaders.numbers):
             must["best that changes numbers only"] = leaders.numbers
         pool = leaders.pool.take(np.lexsort((leaders.pool.index, leaders.pool.cost))[:POOL])

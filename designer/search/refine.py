@@ -25,6 +25,10 @@ BOX = 0.08
 """Half the width of the box in which a start is refined, as a share of each axis."""
 PRICE, PRICE_IN_TOLERANCES = 0.01, 0.05
 """Tidier numbers may cost this share more, or this much, whichever is more."""
+ALIKE = 0.025
+"""Tidy numbers stay within this share of the untidy ones: nobody tells them apart while playing."""
+TIDIED, MOST_TIDIED = 16, 32
+"""About so many designs, and never more, are put back onto tidy numbers."""
 MOST_COMBINATIONS = 4096
 TIDIER = 500
 """About so many tidier neighbours a start has."""
@@ -90,17 +94,17 @@ def _local(evaluator: Evaluator, start: Floats, rng: np.random.Generator) -> Non
 
 
 def _tidier(axis: Axis, value: float) -> list[float]:
-    """Return the value and its neighbours with fewer figures, inside the bounds."""
+    """Return the value and its neighbours with fewer figures, in bounds and near enough to feel alike."""
     found = {value}
     for digits in range(1, DIGITS):
         near = significant(value, digits)
         unit = 10.0 ** (np.floor(np.log10(abs(value))) - digits + 1) if value else 0.0
         found |= {significant(near + side * unit, digits) for side in (-1.0, 0.0, 1.0)}
-    return sorted(v for v in found if axis.low <= v <= axis.high)
+    return sorted(v for v in found if axis.low <= v <= axis.high and abs(v - value) <= ALIKE * abs(value))
 
 
-def _try_tidier(evaluator: Evaluator, row: Floats) -> None:
-    """Score a design's tidier neighbours in the constants without increments."""
+def _tidied(evaluator: Evaluator, row: Floats) -> Floats:
+    """Return the tidiest design around one, in the constants without increments, that costs hardly more."""
     axes = evaluator.space.axes
     choices = [
         _tidier(axis, value) if axis.points is None else [value]
@@ -108,14 +112,15 @@ def _try_tidier(evaluator: Evaluator, row: Floats) -> None:
     ]
     total = int(np.prod([len(choice) for choice in choices]))
     if total <= MOST_COMBINATIONS:
-        evaluator(np.array(list(product(*choices))))
-        return
+        rows = np.array(list(product(*choices)))
+        return np.asarray(rows[tidiest(evaluator, rows, penalised(evaluator(rows)))])
     for k, choice in enumerate(choices):  # too many together: one constant at a time
         rows = np.repeat(row[None, :], len(choice), axis=0)
         rows[:, k] = choice
         ranks = penalised(evaluator(rows))
         dear = ~_nearly(ranks)
         row = rows[min(range(len(choice)), key=lambda i: (dear[i], figures(choice[i]), ranks[i]))]
+    return row
 
 
 def _nearly(ranks: Floats) -> NDArray[np.bool_]:
@@ -137,45 +142,56 @@ def tidiest(evaluator: Evaluator, matrix: Floats, ranks: Floats) -> int:
     return int(near[order[0]])
 
 
-def _say(row: Floats) -> str:
-    return ", ".join(f"{name} {v:.6g}" for name, v in zip(SEARCHABLE, row, strict=True) if np.isfinite(v))
+def refine(evaluator: Evaluator, *, seed: int, progress: Progress | None = None) -> str:
+    """Refine the best few designs that an evaluator remembers, and return what was done in words.
 
-
-def refine(evaluator: Evaluator, *, seed: int, progress: Progress | None = None) -> tuple[int, str]:
-    """Refine the best few designs that an evaluator remembers, and put them back onto tidy numbers.
-
-    Returns the number of the proposed design in `evaluator.everything()` and what was done in words. Each
-    start has a random stream of its own, so nothing depends on the order or the pace of the work.
+    Each start has a random stream of its own, so nothing depends on the order or the pace of the work.
     """
     progress = progress or Silent()
     matrix, scores = evaluator.everything()
     before, ranks = len(matrix), penalised(scores)
-    found_before = float(np.min(ranks))
     starts = matrix[best_rows(matrix, ranks, STARTS)]
     streams = np.random.SeedSequence([seed, 1]).spawn(len(starts))
     for k, (start, stream) in enumerate(zip(starts, streams, strict=True)):
         _local(evaluator, start, np.random.default_rng(stream))
         progress.update("Refining the best", k + 1, len(starts))
+    after = penalised(evaluator.everything()[1])
+    was, now = float(np.min(ranks)), float(np.min(after))
+    gain = "to no better cost" if now >= was else f"cost {was:.4g} became {now:.4g}"
+    return f"SciPy refined the best {len(starts)} with {len(after) - before} more designs: {gain}."
+
+
+def _worth_tidying(evaluator: Evaluator) -> Floats:
+    """Return the feasible designs, (designs, 7), that deserve tidy numbers.
+
+    For each grain and step the best few that differ, and of those on target the steadiest.
+    """
     matrix, scores = evaluator.everything()
     ranks = penalised(scores)
-    refined = float(np.min(ranks))
-    if not evaluator.space.is_grid:
-        for k in best_rows(matrix, ranks, STARTS):
-            _try_tidier(evaluator, matrix[k])
-        matrix, scores = evaluator.everything()
-        ranks = penalised(scores)
-    chosen = tidiest(evaluator, matrix, ranks)
-    text = f"SciPy refined the best {len(starts)} with {len(matrix) - before} more designs"
-    text += (
-        ", to no better cost"
-        if refined >= found_before
-        else f": cost {found_before:.4g} became {refined:.4g}"
-    )
-    if scores.feasible[chosen] and not evaluator.space.is_grid:
-        best = int(np.argmin(ranks))
-        text += (
-            f"; tidied to {_say(matrix[chosen])} at cost {ranks[chosen]:.4g} (untidy: {ranks[best]:.4g})"
-            if chosen != best
-            else "; no tidier numbers cost as little"
-        )
-    return chosen, text + "."
+    coarse = np.nan_to_num(matrix[:, [SEARCHABLE.index("step"), SEARCHABLE.index("grain")]])
+    _, group = np.unique(coarse, axis=0, return_inverse=True)
+    group = group.reshape(-1)
+    each = max(STARTS, TIDIED // (int(group.max()) + 1))
+    chosen: list[int] = []
+    for which in range(int(group.max()) + 1):
+        own = np.flatnonzero((group == which) & scores.feasible)
+        chosen += [int(own[k]) for k in best_rows(matrix[own], ranks[own], each)]
+    steady = np.flatnonzero(scores.feasible & (scores.worst <= 1.0))
+    if len(steady):
+        chosen.append(int(steady[np.lexsort((ranks[steady], scores.rate_spread[steady]))[0]]))
+    chosen = sorted(dict.fromkeys(chosen), key=lambda k: (ranks[k], k))
+    return np.asarray(matrix[chosen[:MOST_TIDIED]])
+
+
+def tidy_designs(evaluator: Evaluator, progress: Progress | None = None) -> Floats:
+    """Return designs on tidy numbers, (designs, 7): what is worth it of all that was tried, put onto them.
+
+    Empty where nothing is feasible. Everything tried on the way is scored and remembered too.
+    """
+    progress = progress or Silent()
+    rows = _worth_tidying(evaluator)
+    tidy = []
+    for k, row in enumerate(rows):
+        tidy.append(_tidied(evaluator, row))
+        progress.update("Finding tidy numbers", k + 1, len(rows))
+    return np.array(tidy).reshape(-1, len(SEARCHABLE))

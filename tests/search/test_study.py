@@ -10,12 +10,14 @@ from designer.brief.model import Brief, Choice, Ledge, Target
 from designer.motion.closed_form import constants_for
 from designer.motion.rule import SEARCHABLE, Constants, Rounding, Rule
 from designer.objective.modules import ObjectiveModule
-from designer.search.evaluate import DIGITS, Evaluator, figures, penalised, significant
+from designer.search.evaluate import Evaluator, figures, penalised, significant
 from designer.search.found import Found, by_scan, by_study
 from designer.search.progress import Silent
+from designer.search.refine import tidy_designs
 from designer.search.run import search
 from designer.search.seeds import seeds
 from designer.search.space import build_space
+from designer.search.study import run_study
 from tests.reference.make import brief_of, small_brief
 from tests.reference.search_briefs import FIXED, fixed_loop, ms, points
 
@@ -99,12 +101,29 @@ def test_study_finds_what_continuous_motion_says() -> None:
 
 
 def test_everything_that_a_study_proposes_is_tidy() -> None:
-    result = search(free_brief(), trials=64)
-    for candidate in (*result.shortlist, *result.front):
-        for name in ("gravity", "launch_speed"):
-            assert figures(getattr(candidate.verdict.constants, name)) <= DIGITS
+    """Fewer figures than what was tried has, at hardly more cost, and never more than four."""
+    brief = free_brief()
+    result = search(brief, trials=64)
     assert result.best is not None
+    for candidate in (*result.shortlist, *result.front):
+        constants = candidate.verdict.constants
+        assert figures(constants.gravity) + figures(constants.launch_speed) <= 6
     assert min(c.verdict.cost or math.inf for c in result.front) == result.best.verdict.cost
+
+
+def test_tidy_numbers_are_found_for_every_grain() -> None:
+    """The best that changes numbers only is among the tidy ones, though another grain may do better."""
+    brief = replace(free_brief(), search=dict(free_brief().search or {}) | {"grain": Choice((0.0, 1.0))})
+    evaluator = Evaluator(brief, build_space(brief))
+    run_study(evaluator, seed=0, trials=96)
+    tidy = tidy_designs(evaluator)
+    matrix, scores = evaluator.everything()
+    grain = SEARCHABLE.index("grain")
+    assert set(tidy[:, grain]) == set(matrix[scores.feasible, grain]) == {0.0, 1.0}
+    for row in tidy:
+        near = (np.abs(matrix[:, :2] / row[:2] - 1.0) < 0.002).all(axis=1) & (matrix[:, grain] == row[grain])
+        best = float(np.min(scores.cost[near & scores.feasible]))
+        assert float(evaluator(row[None, :]).cost[0]) <= best + max(0.05, 0.01 * best) + 1e-9
 
 
 def test_grid_constants_stay_on_their_points() -> None:
