@@ -39,7 +39,7 @@ class ArcPicture:
     inset_y: tuple[float, float]
     """What the enlarged apex shows."""
     thickness: float
-    """How thick slabs and ground are drawn, length."""
+    """How thick ground is drawn, length."""
     small: bool = False
     """One panel among several: a smaller title."""
 
@@ -54,7 +54,7 @@ def arcs(ax: Axes, picture: ArcPicture) -> Axes:
     ax.grid(color=style.FAINT, linewidth=0.6)
     _ground(ax, picture)
     for ledge in scene.ledges:
-        _slab(ax, ledge, picture.thickness)
+        _ledge(ax, ledge)
     for gap in scene.gaps:
         _far_side(ax, gap, picture)
     _paths(ax, picture)
@@ -128,8 +128,8 @@ def _box(x: float, y: float, width: float, height: float, must: str) -> Rectangl
     )
 
 
-def _slab(ax: Axes, ledge: LedgeShape, thickness: float) -> None:
-    """Draw a ledge: a slab whose top is at its height, and a thin line from it to its name."""
+def _ledge(ax: Axes, ledge: LedgeShape) -> None:
+    """Draw a ledge: a line over the arcs, cased in white, and a thin one from it to its name."""
     ax.plot(
         [ledge.x_to, ax.get_xlim()[1]],
         [ledge.height, ledge.height],
@@ -138,8 +138,15 @@ def _slab(ax: Axes, ledge: LedgeShape, thickness: float) -> None:
         linestyle=(0, (1, 2)),
         zorder=1.4,
     )
-    ax.add_patch(
-        _box(ledge.x_from, ledge.height - thickness, ledge.x_to - ledge.x_from, thickness, ledge.must)
+    ends = ([ledge.x_from, ledge.x_to], [ledge.height, ledge.height])
+    ax.plot(*ends, color=style.PAPER, linewidth=4.0, solid_capstyle="butt", zorder=2.65)
+    ax.plot(
+        *ends,
+        color=style.SOLID,
+        linewidth=2.0,
+        linestyle=style.LEDGE_DASH[ledge.must],
+        solid_capstyle="butt",
+        zorder=2.7,
     )
 
 
@@ -172,7 +179,11 @@ def _far_side(ax: Axes, gap: GapShape, picture: ArcPicture) -> None:
 def _names(ax: Axes, picture: ArcPicture) -> None:
     """Name ledges and gaps in a column at the right, at their heights."""
     scene = picture.scene
-    heights = [ledge.height for ledge in scene.ledges] + [gap.far_level for gap in scene.gaps]
-    texts = [f"{style.shorten(x.name)}\n{x.height:g}, {WORDS[x.must]}" for x in scene.ledges]
-    texts += [f"{style.shorten(x.name)}\n{x.width:g} wide, {WORDS[x.must]}" for x in scene.gaps]
-    labels.column(ax, heights, texts, [style.INK] * len(texts), [False] * len(texts))
+    rows = [
+        labels.Row(x.height, f"{style.shorten(x.name)}\n{x.height:g}, {WORDS[x.must]}") for x in scene.ledges
+    ]
+    rows += [
+        labels.Row(x.far_level, f"{style.shorten(x.name)}\n{x.width:g} wide, {WORDS[x.must]}")
+        for x in scene.gaps
+    ]
+    labels.column(ax, rows)

@@ -9,6 +9,7 @@ import numpy as np
 
 from designer.analysis.sensitivity import Nudge, one_increment
 from designer.brief.model import Brief
+from designer.report.findings import plain
 from designer.report.score_figures import Bar
 from designer.report.shown import NEAREST
 from designer.search.result import Candidate
@@ -31,7 +32,9 @@ def sensitivity(brief: Brief, best: Candidate) -> SensitivityPicture | None:
     found = one_increment(brief, best.verdict.constants)
     if not found.nudges:
         return None
-    labels = tuple(nudge_label(nudge) + (" (flip)" if nudge.flip else "") for nudge in found.nudges)
+    labels = tuple(
+        nudge_label(nudge, brief.length_unit) + (" (flip)" if nudge.flip else "") for nudge in found.nudges
+    )
     columns = []
     several = len(best.verdict.jumps) > 1
     for index, change in enumerate(found.nudges[0].changes):
@@ -50,13 +53,23 @@ def sensitivity(brief: Brief, best: Candidate) -> SensitivityPicture | None:
     )
 
 
-def nudge_label(nudge: Nudge) -> str:
-    """Return "gravity 1600 → 1610"."""
+def nudge_label(nudge: Nudge, unit: str) -> str:
+    """Return "gravity 1600 → 1610 cm/s²", "step 10 → 11 ms"."""
     if nudge.share:
         return f"{nudge.constant} {'+' if nudge.direction > 0 else '−'}1 %"
-    after = "none" if np.isinf(nudge.after) else f"{nudge.after:g}"
-    before = "none" if np.isinf(nudge.before) else f"{nudge.before:g}"
-    return f"{nudge.constant} {before} → {after}"
+    measured = {"step": "ms", "gravity": f"{unit}/s²", "fall_factor": ""}.get(nudge.constant, f"{unit}/s")
+    before, after = (_value(nudge.constant, value) for value in (nudge.before, nudge.after))
+    measured = f" {measured}".rstrip()
+    if np.isinf(nudge.after):
+        return f"{nudge.constant} {before}{measured} → {after}"
+    return f"{nudge.constant} {before} → {after}{measured}"
+
+
+def _value(constant: str, value: float) -> str:
+    """Return a constant as it stands beside its unit: a step in ms."""
+    if np.isinf(value):
+        return "none"
+    return plain(value * 1000.0, 5) if constant == "step" else plain(value, 6)
 
 
 def _bars(labels: Sequence[str], nudges: Sequence[Nudge], values: Sequence[float | None]) -> tuple[Bar, ...]:
@@ -88,4 +101,6 @@ def sensitivity_title(
     if not steady:
         return f"{name}: every increment crosses a flip"
     size, row, measure = max(steady, key=lambda item: item[0])
-    return f"{name}: one increment of {nudges[row].constant} moves {measure} by {size:.2g} tolerances{said}"
+    nudge = nudges[row]
+    what = f"1 % of {nudge.constant}" if nudge.share else f"one increment of {nudge.constant}"
+    return f"{name}: {what} moves {measure} by {plain(size, 2)} tolerances{said}"

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
+from matplotlib.collections import PolyCollection
 
 from designer.report import labels, style
 from designer.report.style import Look
@@ -23,12 +24,15 @@ if TYPE_CHECKING:
 class Thread:
     """One set in a picture against frame rate."""
 
+    name: str
     label: str
     look: Look
     rate: Floats
     """(rates,) whole Hz."""
     reach: Floats
     """(rates,) length; NaN where the jump never lands."""
+    own: tuple[float, ...] = ()
+    """Hz: the rate that the set itself fixes, in a fixed loop."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,7 +56,7 @@ class Breach:
     where: NDArray[np.bool_]
     """(rates,)."""
     counts: bool = True
-    """False beyond the supported rates, where it is drawn paler."""
+    """False beyond the rates that count, where it is drawn paler."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +73,8 @@ class ReachPicture:
     """Hz."""
     watched: tuple[float, ...]
     """Hz: shown, but nothing is demanded there."""
+    span: tuple[float, float] | None
+    """Hz: from the lowest to the highest rate that counts; None where it is not set off."""
     y_range: tuple[float, float]
     remarks: tuple[str, ...] = ()
     """Short sentences for the foot: what is off the scale, what never lands."""
@@ -84,9 +90,7 @@ RATE_TICKS = (20, 30, 40, 60, 90, 120, 180, 240, 360, 500, 700, 1000)
 
 def head(ax: Axes, title: str, subtitle: str = "", *, small: bool = False) -> None:
     """Write the finding over a picture, and in small what it shows."""
-    width = style.TITLE_WIDTH_SMALL if small else style.TITLE_WIDTH
-    lines = textwrap.fill(title, width)
-    below = textwrap.fill(subtitle, int(width * 1.45)) if subtitle else ""
+    lines, below = _heading(title, subtitle, small)
     room = (below.count("\n") + 1) * style.FONT_SMALL * 1.25 + 4.0 if below else 0.0
     ax.set_title(lines, pad=10.0 + room, fontsize=style.FONT_PANEL if small else style.FONT_TITLE)
     if below:
@@ -103,6 +107,20 @@ def head(ax: Axes, title: str, subtitle: str = "", *, small: bool = False) -> No
         )
 
 
+def _heading(title: str, subtitle: str, small: bool) -> tuple[str, str]:
+    """Return a title and a subtitle, wrapped."""
+    width = style.TITLE_WIDTH_SMALL if small else style.TITLE_WIDTH
+    return textwrap.fill(title, width), textwrap.fill(subtitle, int(width * 1.45))
+
+
+def heading_height(title: str, subtitle: str, *, small: bool = False) -> float:
+    """Return how much room `head` takes over the axes, inches."""
+    lines, below = _heading(title, subtitle, small)
+    points = 14.0 + (lines.count("\n") + 1) * (style.FONT_PANEL if small else style.FONT_TITLE) * 1.25
+    points += (below.count("\n") + 1) * style.FONT_SMALL * 1.25 + 4.0 if below else 0.0
+    return points / labels.POINTS_PER_INCH
+
+
 def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     """Draw how far each set reaches at every whole rate, with the demands as lines across."""
     ax.set_xscale("log")
@@ -114,26 +132,10 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     for demand in picture.demands:
         _demand(ax, demand, picture.y_range)
     for breach in picture.breaches:
-        thread, bound = picture.threads[breach.thread], picture.demands[breach.demand].bound
-        # Both edges of each rate's step, so that a rate that stands alone is filled too.
-        edges = (thread.rate[:, None] + np.array([-0.5, 0.5])).ravel()
-        ax.fill_between(
-            edges,
-            bound,
-            np.repeat(thread.reach, 2),
-            where=np.repeat(breach.where, 2).tolist(),
-            facecolor=style.BREACH,
-            edgecolor=style.BREACH_TEXT,
-            hatch=style.HATCH,
-            linewidth=0.6,
-            alpha=1.0 if breach.counts else style.PALE,
-            zorder=2.2,
-        )
+        _hatch(ax, picture.threads[breach.thread], picture.demands[breach.demand].bound, breach)
     for order, thread in enumerate(picture.threads):
         ax.plot(
-            thread.rate,
-            thread.reach,
-            drawstyle="steps-mid",
+            *steps(thread.rate, thread.reach),
             color=thread.look.colour,
             linestyle=thread.look.dash,
             linewidth=thread.look.width,
@@ -143,8 +145,12 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
         )
     _rug(ax, picture.supported, style.INK)
     _rug(ax, picture.watched, style.PAPER)
-    if picture.supported:
-        for start, end in ((1.0, min(picture.supported)), (max(picture.supported), 1e6)):
+    for order, thread in enumerate(picture.threads):
+        # Sets may share a rate: the first is drawn larger, so that it shows around the next.
+        size = 6.0 + 3.0 * (len(picture.threads) - 1 - order)
+        _rug(ax, thread.own, thread.look.colour, edge=thread.look.text_colour, size=size)
+    if picture.span is not None:
+        for start, end in ((0.1, picture.span[0]), (picture.span[1], 1e6)):
             ax.axvspan(start, end, facecolor=style.OUTSIDE, linewidth=0, zorder=0.2)
     ax.set_xlabel(picture.x_label)
     ax.set_ylabel(picture.y_label)
@@ -153,6 +159,36 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     if picture.remarks:
         foot(ax, picture.remarks)
     return ax
+
+
+def steps(rate: Floats, reach: Floats) -> tuple[Floats, Floats]:
+    """Return the corners of a line that holds each value from half a Hz below its rate to half above.
+
+    Equal neighbours share one piece.
+    """
+    starts = np.concatenate(([0], np.flatnonzero(reach[1:] != reach[:-1]) + 1))
+    ends = np.concatenate((starts[1:], [len(reach)])) - 1
+    x = np.column_stack((rate[starts] - 0.5, rate[ends] + 0.5)).ravel()
+    return x, np.repeat(reach[starts], 2)
+
+
+def _hatch(ax: Axes, thread: Thread, bound: float, breach: Breach) -> None:
+    """Fill between a bound and a thread over the rates where the thread breaks it."""
+    shapes = []
+    where = np.flatnonzero(breach.where)
+    for run in np.split(where, np.flatnonzero(np.diff(where) > 1) + 1):
+        x, y = steps(thread.rate[run], thread.reach[run])
+        shapes.append(np.column_stack(([x[0], *x, x[-1]], [bound, *y, bound])))
+    area = PolyCollection(
+        shapes,
+        facecolor=style.BREACH,
+        edgecolor=style.BREACH_TEXT,
+        hatch=style.HATCH,
+        linewidth=0.6,
+        alpha=1.0 if breach.counts else style.PALE,
+        zorder=2.2,
+    )
+    ax.add_collection(area, autolim=False)
 
 
 def _demand(ax: Axes, demand: Demand, y_range: tuple[float, float]) -> None:
@@ -171,10 +207,12 @@ def _demand(ax: Axes, demand: Demand, y_range: tuple[float, float]) -> None:
         )
 
 
-def _rug(ax: Axes, rates: Sequence[float], fill: str) -> None:
+def _rug(ax: Axes, rates: Sequence[float], fill: str, edge: str = style.INK, size: float = 6.0) -> None:
     """Mark rates at the foot of the axes."""
     low, high = ax.get_xlim()
     shown = sorted(rate for rate in rates if low <= rate <= high)
+    if not shown:
+        return
     if len(shown) > MOST_TRIANGLES:
         # Too many to tell apart: a bar from the first to the last.
         ax.plot(
@@ -194,9 +232,9 @@ def _rug(ax: Axes, rates: Sequence[float], fill: str) -> None:
         transform=ax.get_xaxis_transform(),
         linestyle="none",
         marker="^",
-        markersize=6,
+        markersize=size,
         markerfacecolor=fill,
-        markeredgecolor=style.INK,
+        markeredgecolor=edge,
         clip_on=False,
         zorder=4,
     )
@@ -204,20 +242,29 @@ def _rug(ax: Axes, rates: Sequence[float], fill: str) -> None:
 
 def _reach_labels(ax: Axes, picture: ReachPicture) -> None:
     """Label threads and demands in one column at the right."""
-    heights, texts, colours, bold = [], [], [], []
+    rows = []
     if picture.label_threads:
         for thread in picture.threads:
-            finite = thread.reach[np.isfinite(thread.reach)]
-            heights.append(float(finite[-1]) if len(finite) else picture.y_range[1])
-            texts.append(thread.label)
-            colours.append(thread.look.text_colour)
-            bold.append(True)
+            end = last_seen(thread, picture.y_range)
+            height = picture.y_range[1] if end is None else float(thread.reach[end])
+            start = None if end is None else _share(ax, float(thread.rate[end]))
+            rows.append(labels.Row(height, thread.label, thread.look.text_colour, True, start))
     for demand in picture.demands:
-        heights.append(demand.value)
-        texts.append(demand.label)
-        colours.append(style.INK)
-        bold.append(False)
-    labels.column(ax, heights, texts, colours, bold)
+        rows.append(labels.Row(demand.value, demand.label, style.INK))
+    labels.column(ax, rows)
+
+
+def last_seen(thread: Thread, y_range: tuple[float, float]) -> int | None:
+    """Return the index of the last rate at which a thread lies in the picture; None where it never does."""
+    with np.errstate(invalid="ignore"):
+        seen = np.flatnonzero((thread.reach >= y_range[0]) & (thread.reach <= y_range[1]))
+    return int(seen[-1]) if len(seen) else None
+
+
+def _share(ax: Axes, rate: float) -> float:
+    """Return where a rate lies across the axes, 0 to 1."""
+    low, high = np.log(ax.get_xlim())
+    return float((np.log(rate) - low) / (high - low))
 
 
 def foot_text(remarks: Sequence[str]) -> str:

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
 from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
 
-from designer.report.style import FONT_SMALL, PAPER, QUIET
+from designer.report.style import FONT_SMALL, INK, PAPER, QUIET
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -50,42 +51,41 @@ def height_of(lines: int) -> float:
     return FONT_SMALL * 1.25 * lines + 2.0
 
 
-def column(
-    ax: Axes,
-    heights: Sequence[float],
-    texts: Sequence[str],
-    colours: Sequence[str],
-    bold: Sequence[bool],
-) -> list[Text]:
-    """Write labels in a column right of the axes, each joined by a thin line to its height (data units)."""
+@dataclass(frozen=True, slots=True)
+class Row:
+    """One label of a column."""
+
+    height: float
+    """What it belongs to, data units."""
+    text: str
+    colour: str = INK
+    bold: bool = False
+    start: float | None = 1.0
+    """Where across the axes (0 to 1) the thing it names ends; None: it is nowhere to be seen."""
+
+
+def column(ax: Axes, rows: Sequence[Row]) -> list[Text]:
+    """Write labels in a column right of the axes, each joined by a thin line to the end of what it names."""
     figure = _figure(ax)
-    if figure is None or not texts:
+    if figure is None or not rows:
         return []
     tall = ax.get_position().height * figure.get_figheight() * POINTS_PER_INCH
-    shares = [height_of(text.count("\n") + 1) / tall for text in texts]
+    shares = [height_of(row.text.count("\n") + 1) / tall for row in rows]
     low, high = ax.get_ylim()
-    wanted = [min(max((height - low) / (high - low), 0.0), 1.0) for height in heights]
+    wanted = [min(max((row.height - low) / (high - low), 0.0), 1.0) for row in rows]
     drawn = []
-    rows = zip(spread(wanted, shares, -0.06, 1.06), wanted, texts, colours, bold, strict=True)
-    for centre, height, text, colour, strong in rows:
-        ax.plot(
-            [1.0, 1.0 + COLUMN_OFFSET * 0.8],
-            [height, centre],
-            transform=ax.transAxes,
-            color=QUIET,
-            linewidth=0.7,
-            clip_on=False,
-            zorder=1.5,
-        )
+    for centre, height, row in zip(spread(wanted, shares, -0.06, 1.06), wanted, rows, strict=True):
+        if row.start is not None:
+            _leader(ax, row, height, centre)
         drawn.append(
             ax.text(
                 1.0 + COLUMN_OFFSET,
                 centre,
-                text,
+                row.text,
                 transform=ax.transAxes,
-                color=colour,
+                color=row.colour,
                 fontsize=FONT_SMALL,
-                fontweight="bold" if strong else "normal",
+                fontweight="bold" if row.bold else "normal",
                 va="center",
                 ha="left",
                 linespacing=1.1,
@@ -93,6 +93,26 @@ def column(
             )
         )
     return drawn
+
+
+def _leader(ax: Axes, row: Row, height: float, centre: float) -> None:
+    """Join a label to the edge of the axes, and from there, dotted, to where the thing itself ends."""
+    lines: list[tuple[list[float], list[float], str, object]] = [
+        ([1.0, 1.0 + COLUMN_OFFSET * 0.8], [height, centre], QUIET, "solid")
+    ]
+    if row.start is not None and row.start < 0.995:
+        lines.append(([row.start, 1.0], [height, height], row.colour, (0, (1, 2))))
+    for x, y, colour, dash in lines:
+        ax.plot(
+            x,
+            y,
+            transform=ax.transAxes,
+            color=colour,
+            linestyle=dash,
+            linewidth=0.7,
+            clip_on=False,
+            zorder=1.5,
+        )
 
 
 def beside(ax: Axes, points: Sequence[tuple[float, float]], texts: Sequence[Text], keep: int) -> None:

@@ -5,13 +5,14 @@ from __future__ import annotations
 import io
 import re
 import warnings
-from collections.abc import Iterator
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 from xml.sax.saxutils import escape
 
 import matplotlib
+import numpy as np
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
@@ -27,17 +28,18 @@ from designer.report import (
     score_figures,
     style,
 )
-from designer.report.arc_figure import arcs
+from designer.report.arc_figure import ArcPicture, arcs
 from designer.report.results import write_whole
-from designer.report.shown import best_of, pair, shown
-from designer.search.result import Candidate, SearchResult
+from designer.report.shown import View, best_of, pair, views
+from designer.search.progress import Progress, Silent
+from designer.search.result import SearchResult
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 ALT_FILE = "alt.txt"
-PANEL, LINE = 3.3, 0.17
-"""Height of the axes of a gap panel and of a line of remarks, inches."""
+PANEL, LINE, AXIS = 3.3, 0.17, 0.68
+"""Height of the axes of a gap panel, of a line of remarks, and of an axis' numbers and name, inches."""
 MARGIN = 0.2
 """Blank inches around a picture."""
 
@@ -56,41 +58,55 @@ class Picture:
         return self.figure.get_tightbbox(renderer).padded(MARGIN)
 
 
-def make_pictures(brief: Brief, result: SearchResult, folder: Path) -> list[Path]:
+def make_pictures(
+    brief: Brief, result: SearchResult, folder: Path, progress: Progress | None = None
+) -> list[Path]:
     """Draw everything that a search shows and write it to a folder: PNG and SVG of each, and alt.txt.
 
     Returns the files in the order in which they should be looked at. The same result gives the same bytes.
     """
+    listener = Silent() if progress is None else progress
     folder.mkdir(parents=True, exist_ok=True)
     files: list[Path] = []
     alts: list[str] = []
     with matplotlib.rc_context(style.RC), warnings.catch_warnings():
         # A name in a script that the shipped font lacks is drawn as boxes; alt.txt still has it.
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
-        for picture in draw_all(brief, result):
+        todo = plan(brief, result)
+        for done, draw in enumerate(todo):
+            listener.update("Drawing", done, len(todo))
+            picture = draw()
             box = picture.box()
             for suffix, data in (("png", png_bytes(picture, box)), ("svg", svg_bytes(picture, box))):
                 path = folder / f"{picture.name}.{suffix}"
                 write_whole(path, data)
                 files.append(path)
             alts.append(f"{picture.name}: {picture.alt}\n")
+        listener.update("Drawing", len(todo), len(todo))
     write_whole(folder / ALT_FILE, "\n".join(alts).encode())
     return [*files, folder / ALT_FILE]
 
 
-def draw_all(brief: Brief, result: SearchResult) -> Iterator[Picture]:
-    """Yield each picture, drawn; call within rc_context(style.RC)."""
+def plan(brief: Brief, result: SearchResult) -> list[Callable[[], Picture]]:
+    """Return how to draw each picture, in order; call them within rc_context(style.RC)."""
     best = best_of(result)
     if best is None:
-        return
-    yield reach_picture(brief, result, best)
-    if len(shown(result)) > len(pair(result, best)):
-        yield reach_panels(brief, result)
+        return []
+    rows = views(brief, result)
+    both = pair(rows, best)
+    todo: list[Callable[[], Picture]] = [lambda: reach_picture(brief, both)]
+    if len(rows) > len(both):
+        todo.append(lambda: reach_panels(brief, rows))
     if brief.gaps:
-        yield gap_picture(brief, result, best)
-    yield arc_picture(brief, result)
-    yield from front_picture(result)
-    yield from sensitivity_picture(brief, best)
+        todo.append(lambda: gap_picture(brief, both))
+    todo.append(lambda: arc_picture(brief, rows))
+    front = build_front.front(result)
+    if front is not None:
+        todo.append(lambda: front_picture(front))
+    nudged = build_sensitivity.sensitivity(brief, best)
+    if nudged is not None:
+        todo.append(lambda: sensitivity_picture(nudged))
+    return todo
 
 
 def _figure(size: tuple[float, float]) -> Figure:
@@ -99,82 +115,87 @@ def _figure(size: tuple[float, float]) -> Figure:
     return figure
 
 
-def front_picture(result: SearchResult) -> Iterator[Picture]:
-    """Draw miss against rate spread; nothing where no set has a score."""
-    data = build_front.front(result)
-    if data is None:
-        return
+def front_picture(data: score_figures.FrontPicture) -> Picture:
+    """Draw miss against rate spread."""
     figure = _figure(style.SIZE_WIDE)
     score_figures.front(figure.add_axes((0.08, 0.12, 0.88, 0.72)), data)
-    yield Picture("front", figure, build_front.front_alt(data))
+    return Picture("front", figure, build_front.front_alt(data))
 
 
-def reach_picture(brief: Brief, result: SearchResult, best: Candidate) -> Picture:
+def reach_picture(brief: Brief, rows: Sequence[View]) -> Picture:
     """Draw reach against frame rate: today and the best over the ledges. The picture that sells."""
-    data = build_reach.reach(brief, pair(result, best), build_reach.reach_title(brief, result, best))
+    data = build_reach.reach(brief, rows)
     height = max(0.72 * style.SIZE_WIDE[1], _column_height(len(data.demands) + len(data.threads)))
     figure = _figure((style.SIZE_WIDE[0], height / 0.72))
     figures.reach_by_rate(figure.add_axes((0.08, 0.12, 0.72, 0.72)), data)
     return Picture("reach-by-rate", figure, build_reach.reach_alt(data))
 
 
-def reach_panels(brief: Brief, result: SearchResult) -> Picture:
+def reach_panels(brief: Brief, rows: Sequence[View]) -> Picture:
     """Draw the same for every set, a panel each on one scale, so that none hides another."""
-    panels = build_reach.reach_panels(brief, result)
+    panels = build_reach.reach_panels(brief, rows)
     axes, figure = _grid(
-        len(panels), 5.0, 2.7, gap=(_label_room(brief), 1.25 + _overhang(len(brief.ledges), 2.7))
+        len(panels), 5.0, 2.7, gap=(_label_room(brief), _between(panels, len(brief.ledges), 2.7))
     )
     for ax, data in zip(axes, panels, strict=True):
         figures.reach_by_rate(ax, data)
-    return Picture("reach-each", figure, " ".join(build_reach.reach_alt(data) for data in panels))
+    alt = [build_reach.reach_alt(data, lone=True) for data in panels]
+    return Picture("reach-each", figure, " ".join([*alt, build_reach.demands_alt(panels[0])]).strip())
 
 
-def gap_picture(brief: Brief, result: SearchResult, best: Candidate) -> Picture:
+def gap_picture(brief: Brief, rows: Sequence[View]) -> Picture:
     """Draw how wide a gap is crossed against frame rate, a panel for each level of the far side."""
-    panels = build_reach.gap_reaches(brief, result, best)
-    # Inches of each panel: the axes, its heading and axis label, and its remarks.
-    heights = [PANEL + 1.7 + LINE * figures.foot_text(one.remarks).count("\n") for one in panels]
-    figure = _figure((style.SIZE_WIDE[0], sum(heights)))
-    top = sum(heights)
-    for data, height in zip(panels, heights, strict=True):
-        top -= height
-        bottom = (top + height - PANEL) / sum(heights)
-        figures.reach_by_rate(figure.add_axes((0.08, bottom, 0.72, PANEL / sum(heights))), data)
+    panels = build_reach.gap_reaches(brief, rows)
+    # Inches of each panel: its heading, the axes with numbers and name, and its remarks.
+    heads = [figures.heading_height(one.title, one.subtitle) for one in panels]
+    feet = [LINE * (figures.foot_text(one.remarks).count("\n") + 2) if one.remarks else 0.0 for one in panels]
+    total = sum(heads) + sum(feet) + len(panels) * (PANEL + AXIS)
+    figure = _figure((style.SIZE_WIDE[0], total))
+    top = total
+    for data, head, below in zip(panels, heads, feet, strict=True):
+        bottom = top - head - PANEL
+        figures.reach_by_rate(figure.add_axes((0.08, bottom / total, 0.72, PANEL / total)), data)
+        top = bottom - AXIS - below
     return Picture("gaps-by-rate", figure, " ".join(build_reach.reach_alt(data) for data in panels))
 
 
-def arc_picture(brief: Brief, result: SearchResult) -> Picture:
+def arc_picture(brief: Brief, rows: Sequence[View]) -> Picture:
     """Draw the arcs of each set over the scene, a panel each on one scale."""
-    panels = build_arcs.arc_panels(brief, result)
+    panels = build_arcs.arc_panels(brief, rows)
     wide = panels[0].x_range[1] - panels[0].x_range[0]
     tall = panels[0].y_range[1] - panels[0].y_range[0]
     width = 7.4 if len(panels) == 1 else 5.0
     by_distance = panels[0].scene.by_distance
     height = min(max(width * tall / wide, 1.6), 5.2) if by_distance else 0.5 * width
     width = min(width, height * wide / tall) if by_distance else width
-    overhang = _overhang(len(brief.ledges) + len(brief.gaps), height)
-    axes, figure = _grid(len(panels), width, height, gap=(_label_room(brief), 1.3 + overhang))
+    room = _between(panels, len(brief.features), height)
+    axes, figure = _grid(len(panels), width, height, gap=(_label_room(brief), room))
     for ax, data in zip(axes, panels, strict=True):
         arcs(ax, data)
     return Picture("arcs", figure, build_arcs.arc_alt(brief, panels))
 
 
-def sensitivity_picture(brief: Brief, best: Candidate) -> Iterator[Picture]:
-    """Draw what one increment of each constant does to the best; nothing where nothing may move."""
-    data = build_sensitivity.sensitivity(brief, best)
-    if data is None:
-        return
+def sensitivity_picture(data: build_sensitivity.SensitivityPicture) -> Picture:
+    """Draw what one increment of each constant does to the best."""
     count, rows = len(data.columns), len(data.labels)
     axes, figure = _grid(count, 2.15, 0.55 + 0.3 * rows, gap=(0.35, 0.0), columns=count)
     for index, (ax, (name, bars)) in enumerate(zip(axes, data.columns, strict=True)):
         score_figures.sensitivity(ax, name, bars, data.limit, row_labels=index == 0)
     score_figures.banner(axes[0], data.title, data.subtitle)
-    yield Picture("sensitivity", figure, data.alt)
+    return Picture("sensitivity", figure, data.alt)
 
 
 def _column_height(names: int) -> float:
     """Return the inches that a column of so many labels of two lines takes."""
     return names * labels.height_of(2) / labels.POINTS_PER_INCH
+
+
+def _between(
+    panels: Sequence[figures.ReachPicture] | Sequence[ArcPicture], names: int, height: float
+) -> float:
+    """Return the inches from the foot of one panel's axes to the head of the next one's."""
+    heads = [figures.heading_height(one.title, one.subtitle, small=one.small) for one in panels]
+    return AXIS + max(heads) + _overhang(names, height)
 
 
 def _overhang(names: int, height: float) -> float:
@@ -208,15 +229,20 @@ def _grid(
 
 def png_bytes(picture: Picture, box: Bbox) -> bytes:
     """Return a picture as PNG at twice the usual resolution; its text alternative stands in the metadata."""
+    from PIL.Image import fromarray
+    from PIL.PngImagePlugin import PngInfo
+
     buffer = io.BytesIO()
-    picture.figure.savefig(
-        buffer,
-        format="png",
-        dpi=style.DPI,
-        bbox_inches=box,
-        metadata={"Software": None, "Title": picture.name, "Description": picture.alt},
-    )
-    return buffer.getvalue()
+    picture.figure.savefig(buffer, format="raw", dpi=style.DPI, bbox_inches=box)
+    # Paper hides what is under it: without transparency the file is smaller, and packed in less time.
+    width = int(box.width * style.DPI)
+    pixels = np.frombuffer(buffer.getbuffer(), np.uint8).reshape(-1, width, 4)[:, :, :3]
+    words = PngInfo()
+    words.add_itxt("Title", picture.name)
+    words.add_itxt("Description", picture.alt)
+    packed = io.BytesIO()
+    fromarray(np.ascontiguousarray(pixels)).save(packed, "png", pnginfo=words, dpi=(style.DPI, style.DPI))
+    return packed.getvalue()
 
 
 def svg_bytes(picture: Picture, box: Bbox) -> bytes:

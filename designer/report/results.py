@@ -15,6 +15,7 @@ from designer.errors import Fault, InputError
 from designer.motion.measures import MEASURES
 from designer.motion.rule import CONSTANT_NAMES
 from designer.report.document import DIGITS, search_document, to_json
+from designer.search.progress import Progress
 from designer.search.result import Candidate, SearchResult
 
 CANDIDATES = "candidates.json"
@@ -130,11 +131,18 @@ def new_folder(root: Path, name: str) -> Iterator[tuple[Path, Path]]:
 
 
 def write_results(
-    brief: Brief, source: bytes, result: SearchResult, root: Path, *, pictures: bool = True
+    brief: Brief,
+    source: bytes,
+    result: SearchResult,
+    root: Path,
+    *,
+    pictures: bool = True,
+    progress: Progress | None = None,
 ) -> Path:
     """Write root/NAME/ with candidates.json, candidates.csv, the brief and figures/; return the folder.
 
-    A second run gets NAME-2. source is the brief's own text, kept so that `check` can read the results.
+    A second run gets NAME-2. source is the brief's own text, kept so that `check` can read the results;
+    progress hears how far the pictures are.
     """
     with new_folder(root, brief.name) as (folder, final):
         (folder / CANDIDATES).write_bytes(to_json(search_document(result)).encode())
@@ -144,5 +152,5 @@ def write_results(
             from designer.report.pictures import make_pictures
 
             (folder / FIGURES).mkdir()
-            make_pictures(brief, result, folder / FIGURES)
+            make_pictures(brief, result, folder / FIGURES, progress)
     return final

@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
-from matplotlib.ticker import FuncFormatter, LogLocator, NullLocator
+from matplotlib.ticker import FuncFormatter, MaxNLocator, NullLocator
 
 from designer.report import labels, style
 from designer.report.figures import foot, head
+from designer.report.findings import plain
 from designer.report.style import Look
 
 if TYPE_CHECKING:
@@ -18,6 +19,17 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True)
+class Scale:
+    """One axis: its range, and its ticks where it is logarithmic (none: evenly spaced round numbers)."""
+
+    low: float
+    high: float
+    log: bool = False
+    ticks: tuple[tuple[float, str], ...] = ()
+    """(value, label)."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,7 +45,7 @@ class FrontPoint:
 
 @dataclass(frozen=True, slots=True)
 class FrontPicture:
-    """Miss against rate spread, both in tolerances."""
+    """Miss (with the violation where nothing is feasible) against rate spread, in tolerances."""
 
     title: str
     subtitle: str
@@ -41,28 +53,31 @@ class FrontPicture:
     """(points,) ascending: sets that nothing beats in both."""
     front_miss: Floats
     named: tuple[FrontPoint, ...]
-    x_range: tuple[float, float]
-    y_range: tuple[float, float]
-    log: tuple[bool, bool]
-    """Whether the axes are logarithmic: (spread, miss)."""
-    remarks: tuple[str, ...] = field(default=())
+    x: Scale
+    y: Scale
+    y_label: str
+    tint: float
+    """Up to which miss the ground is tinted; 0: nowhere."""
+    remarks: tuple[str, ...] = ()
 
 
 def front(ax: Axes, picture: FrontPicture) -> Axes:
     """Draw what precision costs in rate spread, with the shortlist by name; hollow where not on target."""
-    ax.set_xscale("log" if picture.log[0] else "linear")
-    ax.set_yscale("log" if picture.log[1] else "linear")
-    ax.set_xlim(*picture.x_range)
-    ax.set_ylim(*picture.y_range)
-    for axis, log in ((ax.xaxis, picture.log[0]), (ax.yaxis, picture.log[1])):
-        if log:
-            axis.set_major_locator(LogLocator(subs=(1.0, 2.0, 5.0), numticks=12))
-            axis.set_major_formatter(FuncFormatter(lambda value, _: f"{value:g}"))
-            axis.set_minor_locator(NullLocator())
+    ax.set_xscale("log" if picture.x.log else "linear")
+    ax.set_yscale("log" if picture.y.log else "linear")
+    ax.set_xlim(picture.x.low, picture.x.high)
+    ax.set_ylim(picture.y.low, picture.y.high)
+    for axis, scale in ((ax.xaxis, picture.x), (ax.yaxis, picture.y)):
+        axis.set_minor_locator(NullLocator())
+        if scale.log:
+            axis.set_ticks([value for value, _ in scale.ticks], [label for _, label in scale.ticks])
+        else:
+            axis.set_major_locator(MaxNLocator(8, steps=[1, 2, 5, 10]))
+            axis.set_major_formatter(FuncFormatter(lambda value, _: "" if value < 0.0 else plain(value, 4)))
     ax.grid(color=style.FAINT, linewidth=0.7)
-    if picture.y_range[0] < 1.0:
-        ax.axhspan(picture.y_range[0], min(1.0, picture.y_range[1]), color=style.GOOD, zorder=0.5)
-        ax.axhline(1.0, color=style.QUIET, linewidth=0.9, linestyle=(0, (2, 2)), zorder=0.6)
+    if picture.y.low < picture.tint:
+        ax.axhspan(picture.y.low, min(picture.tint, picture.y.high), color=style.GOOD, zorder=0.5)
+        ax.axhline(picture.tint, color=style.QUIET, linewidth=0.9, linestyle=(0, (2, 2)), zorder=0.6)
     ax.plot(
         picture.front_spread,
         picture.front_miss,
@@ -98,7 +113,7 @@ def front(ax: Axes, picture: FrontPicture) -> Axes:
             )
         )
     ax.set_xlabel("rate spread (tolerances)")
-    ax.set_ylabel("miss (tolerances)")
+    ax.set_ylabel(picture.y_label)
     head(ax, picture.title, picture.subtitle)
     spots = [(point.rate_spread, point.miss) for point in picture.named]
     others = list(zip(picture.front_spread.tolist(), picture.front_miss.tolist(), strict=True))

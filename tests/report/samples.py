@@ -17,7 +17,7 @@ from designer.brief.model import (
     Target,
 )
 from designer.motion.measures import MEASURES
-from designer.motion.rule import Constants, FrameTime, Integrator, Rule
+from designer.motion.rule import Constants, FrameTime, Integrator, LandingTest, Rule
 from designer.objective.verdict import FeatureVerdict, JumpVerdict, RateRow, TargetVerdict, Verdict, Worst
 from designer.search.result import Candidate, Certificate, Clash, RunnerUp, SearchResult
 
@@ -248,3 +248,35 @@ def clashing(brief: Brief) -> SearchResult:
 def bring(brief: Brief, *names: str) -> Brief:
     """The brief with sets that people bring along."""
     return replace(brief, sets=tuple(NamedSet(name, PROPOSED[i]) for i, name in enumerate(names)))
+
+
+def robot() -> Brief:
+    """A fixed loop whose step is searched, with no rates listed: each set counts at its own."""
+    return Brief(
+        name="robot",
+        title="Robot",
+        length_unit="m",
+        loop=Loop.FIXED,
+        rule=Rule(Integrator.SEMI_IMPLICIT, landing_test=LandingTest.END_OF_STEP),
+        rates=Rates(()),
+        today=robot_sets()[0],
+        base=robot_sets()[0],
+        search={
+            "gravity": Choice(tuple(15.0 + 0.5 * i for i in range(51)), text="15 to 40 by 0.5"),
+            "launch_speed": Choice(tuple(5.0 + 0.25 * i for i in range(37)), text="5 to 14 by 0.25"),
+            "step": Choice((0.01, 1 / 60, 0.02), text='"20 ms", "60 Hz" or "10 ms"'),
+        },
+        jumps=(JumpBrief(targets=(Target("apex", 0.05, aim=1.6), Target("airtime", 0.02, aim=0.7))),),
+        ledges=(Ledge("belt", 1.5, "reach"), Ledge("press", 1.75, "stay-out")),
+        gaps=(Gap("pit", 3.2, "cross"),),
+    )
+
+
+def robot_sets() -> tuple[Constants, ...]:
+    """Today at 20 ms, then proposals at 60 Hz and at 10 ms."""
+    rest = {"run_speed": 5.0, "terminal_speed": 12.0}
+    return (
+        Constants(gravity=25, launch_speed=9, step=0.02, **rest),
+        Constants(gravity=27, launch_speed=9.5, step=1 / 60, **rest),
+        Constants(gravity=24, launch_speed=8.75, step=0.01, **rest),
+    )

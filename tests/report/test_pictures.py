@@ -17,8 +17,8 @@ from matplotlib.text import Text
 from designer.brief.model import Brief, Gap, Ledge, Rate, Rates
 from designer.objective.judge import judge
 from designer.report import build_arcs, build_front, build_reach, build_sensitivity, style
-from designer.report.pictures import Picture, draw_all, make_pictures
-from designer.report.shown import pair, shown
+from designer.report.pictures import Picture, make_pictures, plan
+from designer.report.shown import View, pair, shown, views
 from designer.search.result import Candidate, SearchResult
 from tests.report.samples import LONG, PROPOSED, TODAY, bring, clashing, courier, result
 
@@ -41,6 +41,16 @@ def judged(brief: Brief, found: SearchResult) -> SearchResult:
         nearest=true(found.nearest) if found.nearest else None,
         front=listed,
     )
+
+
+def drawn_all(brief: Brief, found: SearchResult) -> list[Picture]:
+    with matplotlib.rc_context(style.RC):
+        return [draw() for draw in plan(brief, found)]
+
+
+def both(brief: Brief, found: SearchResult) -> list[View]:
+    """Today and the first candidate, measured."""
+    return pair(views(brief, found), found.shortlist[0])
 
 
 def crowded() -> Brief:
@@ -99,23 +109,19 @@ def overlaps(picture: Picture) -> list[tuple[str, str]]:
 
 def test_the_check_for_overlaps_finds_one() -> None:
     with matplotlib.rc_context(style.RC):
-        picture = next(draw_all(courier(), judged(courier(), result(courier(), 1))))
+        picture = plan(courier(), judged(courier(), result(courier(), 1)))[0]()
         axes = picture.figure.axes[0]
         axes.text(0.5, 0.5, "one upon", transform=axes.transAxes)
         axes.text(0.51, 0.5, "another", transform=axes.transAxes)
         assert overlaps(picture) == [("one upon", "another")]
 
 
-def drawn_all(brief: Brief, found: SearchResult) -> list[Picture]:
-    with matplotlib.rc_context(style.RC):
-        return list(draw_all(brief, found))
-
-
 @pytest.mark.parametrize("count", [1, 3, 6])
 def test_no_text_lies_over_another(count: int) -> None:
     brief = courier()
     with matplotlib.rc_context(style.RC):
-        for picture in draw_all(brief, judged(brief, result(brief, count))):
+        for draw in plan(brief, judged(brief, result(brief, count))):
+            picture = draw()
             assert overlaps(picture) == [], picture.name
 
 
@@ -125,7 +131,8 @@ def test_nor_in_a_crowded_brief() -> None:
     brought = tuple(Candidate(one.name, "brought", "code", base.shortlist[0].verdict) for one in brief.sets)
     found = judged(brief, replace(base, sets=brought))
     with matplotlib.rc_context(style.RC):
-        for picture in draw_all(brief, found):
+        for draw in plan(brief, found):
+            picture = draw()
             assert overlaps(picture) == [], picture.name
 
 
@@ -211,15 +218,15 @@ def test_a_set_that_never_lands_is_said_in_the_picture() -> None:
     stuck = replace(TODAY, gravity=500.0)  # 500·0.001 is half of a grain: a tie to even that never slows
     found = judged(brief, result(brief, 1))
     found = replace(found, today=replace(found.today, verdict=judge(brief, stuck)))  # type: ignore[type-var]
-    data = build_reach.reach(brief, pair(found, found.shortlist[0]), "title")
-    assert any("today: the jump never lands at 501–1000 Hz" in one for one in data.remarks)
+    data = build_reach.reach(brief, both(brief, found))
+    assert any("the jump never lands at 501–1000 Hz" in one for one in data.remarks)
     assert np.isnan(data.threads[0].reach[-1])
 
 
 def test_breaches_are_where_the_verdict_says() -> None:
     brief = courier()
     found = judged(brief, result(brief, 1))
-    data = build_reach.reach(brief, pair(found, found.shortlist[0]), "title")
+    data = build_reach.reach(brief, both(brief, found))
     where = np.zeros(len(data.threads[0].rate), dtype=bool)
     for breach in data.breaches:
         if breach.thread == 0 and breach.demand == 1:
@@ -237,8 +244,8 @@ def test_supported_rates_and_demands_are_always_in_the_range_shown() -> None:
     brief = courier()
     found = judged(brief, result(brief, 6))
     for data in [
-        build_reach.reach(brief, pair(found, found.shortlist[0]), "title"),
-        *build_reach.reach_panels(brief, found),
+        build_reach.reach(brief, both(brief, found)),
+        *build_reach.reach_panels(brief, views(brief, found)),
     ]:
         low, high = data.y_range
         for demand in data.demands:
@@ -257,7 +264,7 @@ def test_gaps_are_grouped_by_level_and_kind() -> None:
         )
     )
     found = judged(brief, result(brief, 1))
-    panels = build_reach.gap_reaches(brief, found, found.shortlist[0])
+    panels = build_reach.gap_reaches(brief, both(brief, found))
     assert [len(one.demands) for one in panels] == [2, 1]
     assert [one.y_label for one in panels] == ["sure_gap (cm)", "max_gap (cm)"]
 
@@ -269,8 +276,8 @@ def test_the_front_marks_what_is_on_target_and_holds_everything_named() -> None:
     assert [one.label for one in data.named] == ["today", "A", "B", "C"]
     assert not data.named[0].on_target
     for one in data.named:
-        assert data.x_range[0] < one.rate_spread < data.x_range[1]
-        assert data.y_range[0] < one.miss < data.y_range[1]
+        assert data.x.low < one.rate_spread < data.x.high
+        assert data.y.low < one.miss < data.y.high
 
 
 def test_sensitivity_has_a_column_a_measure_and_marks_flips() -> None:
@@ -279,13 +286,13 @@ def test_sensitivity_has_a_column_a_measure_and_marks_flips() -> None:
     data = build_sensitivity.sensitivity(brief, found.shortlist[0])
     assert data is not None
     assert [name for name, _ in data.columns] == ["apex", "airtime", "max_gap", "miss", "rate spread"]
-    assert data.labels[0] == "gravity 1620 → 1630 (flip)"
+    assert data.labels[0] == "gravity 1620 → 1630 cm/s² (flip)"
     assert all(len(bars) == len(data.labels) for _, bars in data.columns)
 
 
 def test_arcs_of_today_lie_under_every_set_on_one_scale() -> None:
     brief = courier()
-    panels = build_arcs.arc_panels(brief, judged(brief, result(brief, 3)))
+    panels = build_arcs.arc_panels(brief, views(brief, judged(brief, result(brief, 3))))
     assert len(panels) == 3
     assert len({(one.x_range, one.y_range) for one in panels}) == 1
     assert all(len(one.under) == 6 for one in panels)
