@@ -181,6 +181,19 @@ def test_search_prints_the_normative_document(tmp_path: Path, capsys: pytest.Cap
     assert text == (tmp_path / "small" / "candidates.json").read_text(encoding="utf-8")
 
 
+def test_two_and_a_half_million_designs_are_certified_with_pictures(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    brief = ROOT / "tests" / "reference" / "two-million.toml"
+    assert main(["search", str(brief), "--out", str(tmp_path), "--json"]) == 0
+    document = json.loads(capsys.readouterr().out)
+    certificate = document["certificate"]
+    assert certificate["complete"]
+    assert certificate["grid_points"] == certificate["evaluated"] == 361 * 101 * 14 * 5
+    assert certificate["runner_up"]["cost"] >= document["best"]["cost"]
+    assert list((tmp_path / "two-million" / "figures").glob("*.png"))
+
+
 def test_a_result_can_be_checked_by_label(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     main(["search", str(small(tmp_path)), "--out", str(tmp_path), "--no-pictures", "--json"])
     best = json.loads(capsys.readouterr().out)["best"]

@@ -78,8 +78,7 @@ def command(
             objectives=objectives,
             progress=progress,
         )
-        progress.update("Drawing and writing", 0, 0)
-        folder = write_results(brief, source, result, out, pictures=pictures)
+        folder = write_results(brief, source, result, out, pictures=pictures, progress=progress)
     if as_json:
         from designer.report.document import search_document, to_json
 

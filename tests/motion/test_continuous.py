@@ -117,7 +117,7 @@ def test_body_is_at_the_level_when_it_lands(
     assert landing <= 0.0
     fastest = abs(speed) + gravity * max(factor, 1.0) * abs(airtime)
     assert float(continuous_velocity(gravity, speed, airtime, factor)) == pytest.approx(
-        landing, abs=1e-6 * fastest
+        landing, abs=1e-6 * fastest + 1e-12
     )
 
 
