@@ -11,7 +11,7 @@ from matplotlib.patches import Rectangle
 
 from designer.analysis.arcs import Arc, GapShape, LedgeShape, Scene
 from designer.report import labels, style
-from designer.report.figures import head
+from designer.report.figures import head, name_axes
 from designer.report.style import Look
 
 if TYPE_CHECKING:
@@ -59,8 +59,8 @@ def arcs(ax: Axes, picture: ArcPicture) -> Axes:
         _far_side(ax, gap, picture)
     _paths(ax, picture)
     _enlarge(ax, picture)
-    ax.set_xlabel(f"distance run ({picture.unit})" if scene.by_distance else "time since launch (s)")
-    ax.set_ylabel(f"height ({picture.unit})")
+    run = f"distance run ({picture.unit})" if scene.by_distance else "time since launch (s)"
+    name_axes(ax, run, f"height ({picture.unit})")
     head(ax, picture.title, picture.subtitle, small=picture.small)
     _names(ax, picture)
     return ax

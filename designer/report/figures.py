@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 from matplotlib.collections import PolyCollection
+from matplotlib.transforms import ScaledTranslation
 
 from designer.report import labels, style
 from designer.report.style import Look
@@ -86,6 +87,10 @@ class ReachPicture:
 
 MOST_TRIANGLES = 24
 RATE_TICKS = (20, 30, 40, 60, 90, 120, 180, 240, 360, 500, 700, 1000)
+FEW_TICKS = (20, 30, 60, 120, 240, 500, 1000)
+"""The same for a small panel."""
+LABEL_DOWN, LABEL_LEFT = 28.0, 44.0
+"""How far from the axes their names stand, points."""
 
 
 def head(ax: Axes, title: str, subtitle: str = "", *, small: bool = False) -> None:
@@ -107,6 +112,19 @@ def head(ax: Axes, title: str, subtitle: str = "", *, small: bool = False) -> No
         )
 
 
+def name_axes(ax: Axes, x_label: str, y_label: str, left: float = LABEL_LEFT) -> None:
+    """Name the axes at fixed distances (points): to place names beside tick labels takes long to work out."""
+    figure = ax.get_figure()
+    if figure is None:
+        return
+    shift = ScaledTranslation(-left / 72, 0.0, figure.dpi_scale_trans)
+    down = ScaledTranslation(0.0, -LABEL_DOWN / 72, figure.dpi_scale_trans)
+    ax.set_xlabel(x_label)
+    ax.set_ylabel(y_label)
+    ax.xaxis.set_label_coords(0.5, 0.0, transform=ax.transAxes + down)
+    ax.yaxis.set_label_coords(0.0, 0.5, transform=ax.transAxes + shift)
+
+
 def _heading(title: str, subtitle: str, small: bool) -> tuple[str, str]:
     """Return a title and a subtitle, wrapped."""
     width = style.TITLE_WIDTH_SMALL if small else style.TITLE_WIDTH
@@ -126,7 +144,8 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     ax.set_xscale("log")
     ax.set_xlim(min(t.rate[0] for t in picture.threads), max(t.rate[-1] for t in picture.threads))
     ax.set_ylim(*picture.y_range)
-    ax.set_xticks(RATE_TICKS, [str(tick) for tick in RATE_TICKS])
+    ticks = FEW_TICKS if picture.small else RATE_TICKS
+    ax.set_xticks(ticks, [str(tick) for tick in ticks])
     ax.minorticks_off()
     ax.grid(axis="x", color=style.FAINT, linewidth=0.7)
     for demand in picture.demands:
@@ -152,8 +171,7 @@ def reach_by_rate(ax: Axes, picture: ReachPicture) -> Axes:
     if picture.span is not None:
         for start, end in ((0.1, picture.span[0]), (picture.span[1], 1e6)):
             ax.axvspan(start, end, facecolor=style.OUTSIDE, linewidth=0, zorder=0.2)
-    ax.set_xlabel(picture.x_label)
-    ax.set_ylabel(picture.y_label)
+    name_axes(ax, picture.x_label, picture.y_label)
     head(ax, picture.title, picture.subtitle, small=picture.small)
     _reach_labels(ax, picture)
     if picture.remarks:

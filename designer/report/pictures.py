@@ -6,6 +6,7 @@ import io
 import re
 import warnings
 from collections.abc import Callable, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -36,6 +37,7 @@ from designer.search.result import SearchResult
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
+    from numpy.typing import NDArray
 
 ALT_FILE = "alt.txt"
 PANEL, LINE, AXIS = 3.3, 0.17, 0.68
@@ -73,15 +75,19 @@ def make_pictures(
         # A name in a script that the shipped font lacks is drawn as boxes; alt.txt still has it.
         warnings.filterwarnings("ignore", message="Glyph .* missing from font")
         todo = plan(brief, result)
-        for done, draw in enumerate(todo):
-            listener.update("Drawing", done, len(todo))
-            picture = draw()
-            box = picture.box()
-            for suffix, data in (("png", png_bytes(picture, box)), ("svg", svg_bytes(picture, box))):
-                path = folder / f"{picture.name}.{suffix}"
-                write_whole(path, data)
-                files.append(path)
-            alts.append(f"{picture.name}: {picture.alt}\n")
+        # Packing a PNG is another thread's work while this one writes the SVG.
+        with ThreadPoolExecutor(1) as pool:
+            for done, draw in enumerate(todo):
+                listener.update("Drawing", done, len(todo))
+                picture = draw()
+                box = picture.box()
+                packed = pool.submit(png_bytes, picture, pixels(picture, box))
+                vector = svg_bytes(picture, box)
+                for suffix, data in (("png", packed.result()), ("svg", vector)):
+                    path = folder / f"{picture.name}.{suffix}"
+                    write_whole(path, data)
+                    files.append(path)
+                alts.append(f"{picture.name}: {picture.alt}\n")
         listener.update("Drawing", len(todo), len(todo))
     write_whole(folder / ALT_FILE, "\n".join(alts).encode())
     return [*files, folder / ALT_FILE]
@@ -227,21 +233,28 @@ def _grid(
     return axes, figure
 
 
-def png_bytes(picture: Picture, box: Bbox) -> bytes:
-    """Return a picture as PNG at twice the usual resolution; its text alternative stands in the metadata."""
+def pixels(picture: Picture, box: Bbox) -> NDArray[np.uint8]:
+    """Return a picture as (rows, columns, 3) red, green and blue, at twice the usual resolution.
+
+    Paper hides what is under it: without transparency the file is smaller, and packed in less time.
+    """
+    buffer = io.BytesIO()
+    picture.figure.savefig(buffer, format="raw", dpi=style.DPI, bbox_inches=box)
+    width = int(box.width * style.DPI)
+    found = np.frombuffer(buffer.getbuffer(), np.uint8).reshape(-1, width, 4)
+    return np.ascontiguousarray(found[:, :, :3])
+
+
+def png_bytes(picture: Picture, image: NDArray[np.uint8]) -> bytes:
+    """Return pixels as PNG; the picture's text alternative stands in the metadata."""
     from PIL.Image import fromarray
     from PIL.PngImagePlugin import PngInfo
 
-    buffer = io.BytesIO()
-    picture.figure.savefig(buffer, format="raw", dpi=style.DPI, bbox_inches=box)
-    # Paper hides what is under it: without transparency the file is smaller, and packed in less time.
-    width = int(box.width * style.DPI)
-    pixels = np.frombuffer(buffer.getbuffer(), np.uint8).reshape(-1, width, 4)[:, :, :3]
     words = PngInfo()
     words.add_itxt("Title", picture.name)
     words.add_itxt("Description", picture.alt)
     packed = io.BytesIO()
-    fromarray(np.ascontiguousarray(pixels)).save(packed, "png", pnginfo=words, dpi=(style.DPI, style.DPI))
+    fromarray(image).save(packed, "png", pnginfo=words, dpi=(style.DPI, style.DPI))
     return packed.getvalue()
 
 

@@ -10,7 +10,7 @@ import numpy as np
 from matplotlib.ticker import FuncFormatter, MaxNLocator, NullLocator
 
 from designer.report import labels, style
-from designer.report.figures import foot, head
+from designer.report.figures import foot, head, name_axes
 from designer.report.findings import plain
 from designer.report.style import Look
 
@@ -112,8 +112,7 @@ def front(ax: Axes, picture: FrontPicture) -> Axes:
                 zorder=4,
             )
         )
-    ax.set_xlabel("rate spread (tolerances)")
-    ax.set_ylabel(picture.y_label)
+    name_axes(ax, "rate spread (tolerances)", picture.y_label, left=52.0)
     head(ax, picture.title, picture.subtitle)
     spots = [(point.rate_spread, point.miss) for point in picture.named]
     others = list(zip(picture.front_spread.tolist(), picture.front_miss.tolist(), strict=True))

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import io
 from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
@@ -10,7 +9,6 @@ from pathlib import Path
 import matplotlib
 import numpy as np
 import pytest
-from PIL import Image
 
 from designer.analysis.sensitivity import Nudge
 from designer.brief.model import Brief, Gap, Ledge
@@ -19,7 +17,7 @@ from designer.objective.judge import judge
 from designer.report import build_arcs, build_front, build_reach, style
 from designer.report.build_sensitivity import nudge_label
 from designer.report.figures import Thread, last_seen, steps
-from designer.report.pictures import make_pictures, plan, png_bytes
+from designer.report.pictures import make_pictures, pixels, plan
 from designer.report.results import write_results
 from designer.report.shown import View, pair, views
 from designer.search.result import Candidate, SearchResult
@@ -274,7 +272,7 @@ def test_no_picture_has_a_blank_side() -> None:
         with matplotlib.rc_context(style.RC):
             for draw in plan(brief, found):
                 picture = draw()
-                image = np.asarray(Image.open(io.BytesIO(png_bytes(picture, picture.box()))))
+                image = pixels(picture, picture.box())
                 ink = (image != 255).any(axis=2)
                 rows, columns = np.flatnonzero(ink.any(axis=1)), np.flatnonzero(ink.any(axis=0))
                 sides = (
