@@ -41,7 +41,7 @@ def find_flags(
         if not bool(np.all(has_closed_form(brief.rule, np.array([constants.grain])))):
             found.append("no closed form for this rule and grain: every jump is stepped")
     found += _float_noise(constants, list(seen))
-    return (*found, *_between(rows, features), *_fairness(brief, rows))
+    return (*found, *_fairness(brief, rows), *_between(rows, features))
 
 
 def _ties(brief: Brief, constants: Constants, steps: Sequence[float]) -> list[str]:
