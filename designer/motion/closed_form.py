@@ -21,7 +21,7 @@ from designer.motion.continuous import (
 from designer.motion.jumps import LONGEST_FLIGHT, Jumps, Launches, Status
 from designer.motion.phases import NEAR, Block, Landing, Notes, Phase, band, take
 from designer.motion.rounding import snap_array
-from designer.motion.rule import Integrator, LandingTest, Mode, Place, Rule
+from designer.motion.rule import Integrator, LandingTest, Mode, Place, Rule, Second
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -59,14 +59,14 @@ LOSS_MODES = {
 }
 
 
-def has_closed_form(rule: Rule, grain: Floats) -> Bools:
+def has_closed_form(rule: Rule, grain: Floats, second: Second | None = None) -> Bools:
     """Return for each grain (any shape, length/s) whether jumps have a closed form under this rule.
 
     They have one where nothing is rounded, or where velocity alone is, without carry, to a grain that is
-    whole or 2⁻ⁿ: multiples of other grains have no exact binary value.
+    whole or 2⁻ⁿ: multiples of other grains have no exact binary value. A flight with a second jump has none.
     """
     grains = np.asarray(grain, dtype=np.float64)
-    if rule.position.grain > 0.0:
+    if rule.position.grain > 0.0 or second is not None:
         return np.zeros(grains.shape, dtype=bool)
     if rule.rounding.carry:
         return np.asarray(grains == 0.0)
@@ -75,13 +75,15 @@ def has_closed_form(rule: Rule, grain: Floats) -> Bools:
     return exact
 
 
-def closed_form(rule: Rule, launches: Launches, level: float = 0.0) -> tuple[Jumps, Bools]:
+def closed_form(
+    rule: Rule, launches: Launches, level: float = 0.0, *, second: Second | None = None
+) -> tuple[Jumps, Bools]:
     """Return what becomes of every launch, and which of them must be stepped instead.
 
     Both have the launches' broadcast shape; near_apex_steps is −1. A jump is flagged where the answer hangs
     on float noise (a rounding tie, an apex or a landing within noise of its threshold) or where the rule has
-    no closed form; what stands in the result there means nothing. `level`: length over the take-off.
-    Nothing is validated: launches that make no sense come back flagged.
+    no closed form (with a `second` jump none has); what stands in the result there means nothing. `level`:
+    length over the take-off. Nothing is validated: launches that make no sense come back flagged.
     """
     columns = launches.broadcast()
     shape = columns[0].shape
@@ -93,26 +95,26 @@ def closed_form(rule: Rule, launches: Launches, level: float = 0.0) -> tuple[Jum
     kinds = (np.int8, np.int32, np.float64, np.int32, np.float64, np.float64, bool)
     results = [np.empty(shape, dtype=kind) for kind in kinds]
     with np.errstate(all="ignore"):
-        for place in _places(shape):
+        for place in places(shape):
             size = results[0][place].size
             if size == 0:
                 continue
-            block = Block(rule, float(level), size, *(_part(column, place) for column in columns))
+            block = Block(rule, float(level), size, *(part_of(column, place) for column in columns))
             first = np.ravel(special[place]) if has_special else None
             for result, values in zip(results, _fly(block, first), strict=True):
                 result[place] = np.reshape(values, result[place].shape)
     status, steps, apex, apex_step, fraction, velocity, flagged = results
-    for sound in _sound(rule, launches):
+    for sound in _sound(rule, launches, second):
         if not sound.all():
             flagged |= ~sound
     uncounted = np.full(shape, -1, dtype=np.int32)
     return Jumps(status, steps, apex, apex_step, fraction, velocity, uncounted), flagged
 
 
-def _sound(rule: Rule, launches: Launches) -> tuple[Bools, ...]:
+def _sound(rule: Rule, launches: Launches, second: Second | None) -> tuple[Bools, ...]:
     """Return, constant by constant and each in its own shape, which launches the closed form is meant for."""
     return (
-        has_closed_form(rule, launches.grain),
+        has_closed_form(rule, launches.grain, second),
         np.asarray((launches.gravity > 0.0) & (launches.gravity < np.inf)),
         np.isfinite(launches.launch_speed),
         np.asarray((launches.step > 0.0) & (launches.step <= 0.5 * LONGEST_FLIGHT)),
@@ -121,14 +123,14 @@ def _sound(rule: Rule, launches: Launches) -> tuple[Bools, ...]:
     )
 
 
-def _part(column: Floats, place: tuple[Any, ...]) -> Any:
+def part_of(column: Floats, place: tuple[Any, ...]) -> Any:
     """Return a block's part of a column, flat; one number where the column holds but one."""
     if any(stride for stride, length in zip(column.strides, column.shape, strict=True) if length > 1):
         return np.ravel(column[place])
     return column[(0,) * column.ndim]
 
 
-def _places(shape: tuple[int, ...]) -> Iterator[tuple[Any, ...]]:
+def places(shape: tuple[int, ...]) -> Iterator[tuple[Any, ...]]:
     """Yield indices that cut an array of this shape into blocks of about CHUNK elements."""
     if not shape:
         yield ()
@@ -136,7 +138,7 @@ def _places(shape: tuple[int, ...]) -> Iterator[tuple[Any, ...]]:
     inner = math.prod(shape[1:])
     if inner > CHUNK:
         for i in range(shape[0]):
-            for rest in _places(shape[1:]):
+            for rest in places(shape[1:]):
                 yield (i, *rest)
         return
     rows = max(1, CHUNK // max(inner, 1))
@@ -153,7 +155,7 @@ def _fly(block: Block, special: Bools | None) -> tuple[NDArray[Any], ...]:
     notes = Notes(zeros, zeros, np.zeros(block.size, dtype=bool), np.zeros(block.size, dtype=bool), [])
     n, y, v = zeros, zeros, block.launch_speed + zeros
     if special is not None:
-        n, y, v = _first_step(block, special, notes)
+        n, y, v = first_step(block, special, notes)
     loss = block.gravity * block.step
     falling_loss = (block.gravity * block.fall_factor) * block.step
     two_pieces = bool(np.any(block.fall_factor != 1.0)) or block.rule.rounding.mode is Mode.TOWARD_ZERO
@@ -176,7 +178,7 @@ def _fly(block: Block, special: Bools | None) -> tuple[NDArray[Any], ...]:
     return _outcome(block, landing, np.where(still, falling.n, np.inf), notes)
 
 
-def _first_step(block: Block, special: Bools, notes: Notes) -> tuple[Floats, Floats, Floats]:
+def first_step(block: Block, special: Bools, notes: Notes) -> tuple[Floats, Floats, Floats]:
     """Take the first step where it is unlike the others; return n, y and v, each (jumps,).
 
     It is where gravity starts only with the second, or where the launch is off the grain. Done in the rule's

@@ -11,8 +11,13 @@ One step of h seconds, from (y, v, e):
     m = w where rounding acts before the move, u where it acts at the end of the step
     y' = snap_position(y + v·h | y + m·h | y + 0.5·(v + m)·h);   v' = w
 
+A second jump in the air acts once, at the start of a step, before the gravity of that step is chosen: v
+becomes its launch speed, or v plus that, unrounded. It is due at the first step n > 1 that starts with v ≤ 0,
+or at the first step n with (n − 1)·h ≥ when; a landing before that cancels it.
+
 Codes is the tuple (integrator, mode, before_move, carry, launch_gravity, swept, contact_tolerance,
-position_grain, position_mode); numbers is (gravity, launch_speed, grain, fall_factor, terminal_speed).
+position_grain, position_mode, second, second_speed, second_when), with second one of NO_SECOND, SET, ADD and
+second_when AT_APEX or seconds; numbers is (gravity, launch_speed, grain, fall_factor, terminal_speed).
 """
 
 from __future__ import annotations
@@ -41,7 +46,13 @@ EXPLICIT = 0
 SEMI_IMPLICIT = 1
 AVERAGE = 2
 
+NO_SECOND = 0
+SET = 1
+ADD = 2
+AT_APEX = -1.0
+
 _ONE_AT_A_TIME = threading.Lock()
+_COMPILED: dict[Callable[..., None], Callable[..., None]] = {}
 
 _LANDS = int(Status.LANDS)
 _NEVER_SLOWS = int(Status.NEVER_SLOWS)
@@ -51,7 +62,7 @@ _OUT_OF_REACH = int(Status.OUT_OF_REACH)
 _FLYING = -1
 _POSITION_UP = rounding.UP
 
-Codes: TypeAlias = tuple[int, int, bool, bool, bool, bool, float, float, int]
+Codes: TypeAlias = tuple[int, int, bool, bool, bool, bool, float, float, int, int, float, float]
 Numbers: TypeAlias = tuple[float, float, float, float, float]
 State: TypeAlias = tuple[float, float, float]
 Outcome: TypeAlias = tuple[int, int, float, int, float, float, int]
@@ -91,6 +102,21 @@ def advance(codes: Codes, numbers: Numbers, step: float, state: State, loss: flo
     return y, rounded, (wanted - rounded if codes[3] else 0.0)
 
 
+def is_due(codes: Codes, n: int, step: float, v: float) -> bool:
+    """Return whether a second jump still to come acts at the start of step n, where the velocity is v."""
+    if codes[11] == AT_APEX:
+        return v <= 0.0 and n > 1
+    return (n - 1) * step >= codes[11]
+
+
+def again(codes: Codes, n: int, v: float, rising: float, falling: float) -> tuple[float, float]:
+    """Return what a second jump at the start of step n makes of the velocity v, and a for that step."""
+    v = codes[10] if codes[9] == SET else v + codes[10]
+    if n == 1 and not codes[4]:
+        return v, 0.0
+    return v, rising if v > 0.0 else falling
+
+
 def fly(codes: Codes, numbers: Numbers, step: float, level: float, count_near: bool) -> Outcome:
     """Return (status, steps, apex, apex_step, fraction, landing_velocity, near_apex_steps) of one jump.
 
@@ -113,7 +139,11 @@ def _flight(codes: Codes, numbers: Numbers, step: float, level: float, near: flo
     low, high = level - codes[6], level + codes[6]
     reached = level <= 0.0 or low <= 0.0
     loss, rising, falling = losses(codes, numbers, step)
+    pending, acted, unaided = codes[9] != NO_SECOND, 0, math.nan
     for n in range(1, last_step(step) + 1):
+        if pending and is_due(codes, n, step, v):
+            pending, acted, unaided = False, n, v
+            v, loss = again(codes, n, v, rising, falling)
         state = (y, v, remainder)
         following = advance(codes, numbers, step, state, loss)
         y_next, v_next, remainder = following
@@ -122,15 +152,20 @@ def _flight(codes: Codes, numbers: Numbers, step: float, level: float, near: flo
         if y_next >= near:
             near_steps += 1
         reached = reached or y_next >= low
-        if reached and y_next <= high and y_next < y:
+        if y_next <= high and y_next < y and reached:
             fraction = min(max((y - level) / (y - y_next), 0.0), 1.0) if codes[5] else 1.0
             return _LANDS, n, apex, apex_step, fraction, v_next, near_steps
         if v_next == v or (v_next <= 0.0 and not reached):
-            verdict = _foreseen(codes, numbers[2], n, state, following, reached)
-            if verdict != _FLYING:
-                return verdict, 0, math.nan, 0, math.nan, math.nan, 0
+            # While v > 0 a second jump at the apex stays away; any other that is to come could change all.
+            settled = not pending or (v_next > 0.0 and codes[11] == AT_APEX)
+            if settled and acted != n:
+                verdict = _foreseen(codes, numbers[2], n, state, following, reached)
+                if verdict != _FLYING:
+                    return verdict, 0, math.nan, 0, math.nan, math.nan, 0
         y, v, before = y_next, v_next, v
         loss = rising if v > 0.0 else falling
+    if acted == last_step(step):
+        before = unaided
     return _at_last(v, before, reached), 0, math.nan, 0, math.nan, math.nan, 0
 
 
@@ -187,19 +222,83 @@ def fly_each(
         near_apex_steps[i] = outcome[6]
 
 
-def compiled() -> Callable[..., None]:
-    """Return `fly_each` as Numba compiles it; the first call imports Numba. Threads may call it at once."""
+def time_above(codes: Codes, numbers: Numbers, step: float, height: float) -> float:
+    """Return the longest time that a jump is above `height` without a break; NaN where it never lands.
+
+    It is followed to its landing at level 0, or at `height` where that is lower. A stay begins where a step
+    that moves up comes to `height`, or with the launch, and ends where a landing at `height` would: at the
+    ends of these steps, or, where landings are swept, where the segments cross `height`.
+    """
+    y, v, remainder = 0.0, numbers[1], 0.0
+    low, high, ground = height - codes[6], height + codes[6], min(height, 0.0) + codes[6]
+    over, since, longest = height <= 0.0 or low <= 0.0, 0.0, 0.0
+    loss, rising, falling = losses(codes, numbers, step)
+    pending, acted = codes[9] != NO_SECOND, 0
+    for n in range(1, last_step(step) + 1):
+        if pending and is_due(codes, n, step, v):
+            pending, acted = False, n
+            v, loss = again(codes, n, v, rising, falling)
+        state = (y, v, remainder)
+        following = advance(codes, numbers, step, state, loss)
+        y_next, v_next, remainder = following
+        if y_next > y and y_next >= low and not over:
+            over, since = True, _crossing(codes[5], n, step, (height - y) / (y_next - y))
+        elif y_next <= high and y_next < y:
+            if over:
+                longest = max(longest, _crossing(codes[5], n, step, (y - height) / (y - y_next)) - since)
+                over = False
+            if y_next <= ground:
+                return longest
+        if v_next == v and acted != n and (not pending or (v_next > 0.0 and codes[11] == AT_APEX)):
+            verdict = _foreseen(codes, numbers[2], n, state, following, True)
+            if verdict != _FLYING:
+                return math.nan
+        y, v = y_next, v_next
+        loss = rising if v > 0.0 else falling
+    return math.nan
+
+
+def _crossing(swept: bool, n: int, step: float, fraction: float) -> float:
+    """Return when a height is crossed in step n: at its end, or `fraction`, held to 0 … 1, into it."""
+    return (n - 1) * step + step * min(max(fraction, 0.0), 1.0) if swept else n * step
+
+
+def time_above_each(codes: Codes, columns: Columns, height: float, results: NDArray[np.float64]) -> None:
+    """Put `time_above` of each row of `columns` (see `fly_each`) into `results`, (jumps,)."""
+    gravity, launch_speed, step, grain, fall_factor, terminal_speed = columns
+    for i in range(len(gravity)):
+        numbers = (gravity[i], launch_speed[i], grain[i], fall_factor[i], terminal_speed[i])
+        results[i] = time_above(codes, numbers, step[i], height)
+
+
+def compiled(function: Callable[..., None] = fly_each) -> Callable[..., None]:
+    """Return `fly_each` or `time_above_each` as Numba compiles it; the first call imports Numba.
+
+    Threads may call it at once.
+    """
     with _ONE_AT_A_TIME, _uninterrupted():
-        return _compile()
+        if function not in _COMPILED:
+            _COMPILED[function] = _compile(function)
+        return _COMPILED[function]
 
 
-def is_compiled() -> bool:
-    """Whether loading Numba is paid for already, so that even small work may as well use it."""
-    return _compile.cache_info().currsize > 0
+def is_compiled(function: Callable[..., None] = fly_each) -> bool:
+    """Whether loading the compiled code is paid for already, so that even small work may as well use it."""
+    return function in _COMPILED
 
 
 @cache
-def _compile() -> Callable[..., None]:
+def _register() -> None:
+    """Tell Numba, once, what the functions that it compiles call."""
+    from numba.extending import register_jitable
+
+    helpers = (whole, snap, last_step, losses, is_due, again, _foreseen, _at_last, _flight, fly)
+    for function in (*helpers, _crossing, time_above):
+        register_jitable(function)
+    register_jitable(inline="always")(advance)  # a quarter faster, measured
+
+
+def _compile(function: Callable[..., None]) -> Callable[..., None]:
     """Compile, and keep the code on disk between runs.
 
     Numba looks only at the file of the function itself to see whether what it kept is stale, so the folder's
@@ -207,11 +306,8 @@ def _compile() -> Callable[..., None]:
     """
     import numba
     import numpy as np
-    from numba.extending import register_jitable
 
-    for function in (whole, snap, last_step, losses, _foreseen, _at_last, _flight, fly):
-        register_jitable(function)
-    register_jitable(inline="always")(advance)  # a quarter faster, measured
+    _register()
     config: Any = numba.config
     before = config.CACHE_DIR
     folder = _cache_folder(numba.__version__, before)
@@ -219,12 +315,17 @@ def _compile() -> Callable[..., None]:
         if folder is not None:
             config.CACHE_DIR = str(folder)
         made: Callable[..., None] = numba.njit(cache=folder is not None, nogil=True, error_model="numpy")(
-            fly_each
+            function
         )
         numbers = tuple(np.ones(1) for _ in range(6))
         kinds = (np.int8, np.int32, np.float64, np.int32, np.float64, np.float64, np.int32)
         results = tuple(np.empty(1, dtype=kind) for kind in kinds)
-        made((0, 0, False, False, True, True, 0.0, 0.0, 0), numbers, 0.0, False, results)  # compiles it now
+        codes = (0, 0, False, False, True, True, 0.0, 0.0, 0, NO_SECOND, 0.0, 0.0)
+        # The first call compiles.
+        if function is fly_each:
+            made(codes, numbers, 0.0, False, results)
+        else:
+            made(codes, numbers, 0.0, np.empty(1))
     finally:
         config.CACHE_DIR = before
     return made

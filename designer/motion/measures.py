@@ -78,3 +78,16 @@ def max_gap(airtime: Floats, run_speed: Floats | float, edge_allowance: Floats |
 def sure_gap(reach: Floats, run_speed: Floats | float, step: Floats) -> Floats:
     """Return max(0, max_gap − run_speed·h): the gap in the worst phase of the take-off step, length."""
     return np.maximum(0.0, np.asarray(reach - run_speed * step, dtype=np.float64))
+
+
+def clearance(time_above: Floats, run_speed: Floats | float) -> Floats:
+    """Return run_speed·(time above a block's height): the longest block of that height it clears, length.
+
+    `time_above` in seconds (see designer.motion.batch.above).
+    """
+    return np.asarray(run_speed * time_above, dtype=np.float64)
+
+
+def head_top(apex: Floats, body_height: Floats | float) -> Floats:
+    """Return apex + body_height: how high the top of the body comes under a ceiling, length."""
+    return np.asarray(apex + body_height, dtype=np.float64)

@@ -121,9 +121,43 @@ class Constants:
     """How far above the apex a ledge may be and still be stepped onto, length."""
     edge_allowance: float = 0.0
     """What the two edges of a gap add to its reach, length."""
+    gravity_factor: float = 1.0
+    """What this jump makes of the game's one gravity; only where a brief has several jumps."""
+
+    @property
+    def pull(self) -> float:
+        """The gravity that acts on this jump while it rises: gravity·gravity_factor, length/s²."""
+        return self.gravity * self.gravity_factor
+
+
+class How(StrEnum):
+    """What a second jump does to the velocity."""
+
+    SET = "set"
+    ADD = "add"
+
+
+@dataclass(frozen=True, slots=True)
+class Second:
+    """A second jump in the air, once a flight; it acts at the start of a step, before that step's gravity."""
+
+    launch_speed: float
+    """Length/s, upward, > 0."""
+    when: float | None = None
+    """Seconds after the launch, at the start of the first step n with (n − 1)·h ≥ when; None: at the apex."""
+    how: How = How.SET
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "how", How(self.how))
 
 
 SEARCHABLE = ("gravity", "launch_speed", "step", "grain", "run_speed", "fall_factor", "terminal_speed")
 """Constants that a search may vary, in the order that decides between equals."""
+
+SHARED = ("gravity", "step", "grain")
+"""Constants of which a game has one, whatever jumps it has."""
+
+OWN = ("launch_speed", "run_speed", "fall_factor", "terminal_speed", "gravity_factor")
+"""Constants that a jump may have for itself and a search may vary."""
 
 CONSTANT_NAMES = tuple(f.name for f in fields(Constants))

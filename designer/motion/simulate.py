@@ -12,7 +12,7 @@ from designer.errors import Fault, InputError
 from designer.motion import kernel
 from designer.motion.jumps import LONGEST_FLIGHT, Jumps, Launches, Status
 from designer.motion.rounding import MODE_CODES
-from designer.motion.rule import Constants, Integrator, LandingTest, Place, Rule
+from designer.motion.rule import Constants, How, Integrator, LandingTest, Place, Rule, Second
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -50,6 +50,8 @@ class Trace:
     """u, the velocity before it was rounded, length/s; entry 0 is the launch speed."""
     status: Status
     """How the jump ends; where it does not land at the level, the arrays stop after a number of steps."""
+    second_step: int | None = None
+    """The step n at whose start the second jump acts, on v[n − 1]; None where none acts."""
 
     @property
     def lands(self) -> bool:
@@ -62,6 +64,7 @@ def simulate(
     launches: Launches,
     level: float = 0.0,
     *,
+    second: Second | None = None,
     workers: int = 1,
     compiled: bool | None = None,
     count_near_apex: bool = False,
@@ -70,34 +73,35 @@ def simulate(
 
     The result has the launches' broadcast shape and does not depend on `workers` or `compiled`. Where
     `compiled` is None, large work is compiled by Numba and small work runs as plain Python, unless compiled
-    code is there already. near_apex_steps is −1 unless `count_near_apex`. Raises InputError where a number
-    cannot be used.
+    code is there already. near_apex_steps is −1 unless `count_near_apex`. `second`: a second jump in the air,
+    the same for every launch. Raises InputError where a number cannot be used.
     """
     columns = launches.broadcast()
-    _validate(rule, launches, level, workers)
+    _validate(rule, launches, level, workers, second)
     shape = columns[0].shape
     size = columns[0].size
     if compiled is None:
-        compiled = kernel.is_compiled() or _is_large(launches, level, size)
+        compiled = kernel.is_compiled() or _is_large(launches, level, size, second)
     results = _empty(size)
-    codes = rule_codes(rule)
+    codes = rule_codes(rule, second)
     fly_each = kernel.compiled() if compiled else kernel.fly_each
     plain = fly_each is kernel.fly_each  # so it is, too, where Numba is told not to compile
 
-    def fly_chunk(start: int) -> None:
-        stop = min(start + CHUNK, size)
-        place = np.unravel_index(np.arange(start, stop), shape) if shape else ()
-        rows = [np.atleast_1d(column[place]) for column in columns]
-        # Plain Python needs Python's own floats: quicker, and they never warn.
-        inputs: tuple[Any, ...] = tuple(row.tolist() for row in rows) if plain else tuple(rows)
-        fly_each(codes, inputs, float(level), bool(count_near_apex), tuple(r[start:stop] for r in results))
+    def fly_chunk(rows: tuple[Any, ...], part: slice) -> None:
+        fly_each(codes, rows, float(level), bool(count_near_apex), tuple(r[part] for r in results))
 
-    _run(fly_chunk, range(0, size, CHUNK), 1 if plain else workers)
+    _run(fly_chunk, columns, 1 if plain else workers, plain)
     return Jumps(*(result.reshape(shape) for result in results))
 
 
 def trace(
-    rule: Rule, constants: Constants, step: float, level: float = 0.0, *, max_steps: int | None = None
+    rule: Rule,
+    constants: Constants,
+    step: float,
+    level: float = 0.0,
+    *,
+    second: Second | None = None,
+    max_steps: int | None = None,
 ) -> Trace:
     """Return one jump step by step, to the landing at `level`, or `max_steps` steps where given.
 
@@ -106,8 +110,8 @@ def trace(
     number cannot be used.
     """
     launches = launches_of(constants, step)
-    _validate(rule, launches, level, 1)
-    codes = rule_codes(rule)
+    _validate(rule, launches, level, 1, second)
+    codes = rule_codes(rule, second)
     gravity, launch_speed, step, grain, fall_factor, terminal = (float(x) for x in launches.broadcast())
     numbers = (gravity, launch_speed, grain, fall_factor, terminal)
     outcome = kernel.fly(codes, numbers, step, float(level), False)
@@ -120,23 +124,64 @@ def trace(
     state = (0.0, launch_speed, 0.0)
     v[0] = unrounded[0] = launch_speed
     loss, rising, falling = kernel.losses(codes, numbers, step)
+    acted = None
     for n in range(1, count + 1):
+        if second is not None and acted is None and kernel.is_due(codes, n, step, state[1]):
+            acted = n
+            again, loss = kernel.again(codes, n, state[1], rising, falling)
+            state = (state[0], again, state[2])
         unrounded[n] = max(state[1] - loss, -terminal)
         state = kernel.advance(codes, numbers, step, state, loss)
         y[n], v[n] = state[0], state[1]
         loss = rising if v[n] > 0.0 else falling
-    return Trace(np.arange(count + 1, dtype=np.float64) * step, y, v, unrounded, status)
+    return Trace(np.arange(count + 1, dtype=np.float64) * step, y, v, unrounded, status, acted)
+
+
+def time_above(
+    rule: Rule,
+    launches: Launches,
+    height: float,
+    *,
+    second: Second | None = None,
+    workers: int = 1,
+    compiled: bool | None = None,
+) -> NDArray[np.float64]:
+    """Step every launch and return for how long it stays above `height` (length), in seconds.
+
+    Shape, `second`, `workers` and `compiled` are those of `simulate`. The longest stay counts: a second jump
+    may come too late to keep the body above. A stay begins in the first step that moves up to `height` (to
+    within the contact tolerance), or with the launch where the height is 0 or lower, and ends in the first
+    step after that which would land at `height`. Where the landing test is swept, its ends are where the
+    segments of these two steps cross `height`, held to their own step; otherwise they are the steps' ends, so
+    that the time is the number of samples above, times h. It ends as airtime(height) does; 0 where the jump
+    never gets so high, NaN where it never lands at level 0 (at `height`, where that is lower).
+    """
+    columns = launches.broadcast()
+    _validate(rule, launches, height, workers, second)
+    size = columns[0].size
+    if compiled is None:
+        compiled = kernel.is_compiled(kernel.time_above_each) or _is_large(launches, height, size, second)
+    results = np.empty(size)
+    codes = rule_codes(rule, second)
+    each = kernel.compiled(kernel.time_above_each) if compiled else kernel.time_above_each
+    plain = each is kernel.time_above_each
+
+    def chunk(rows: tuple[Any, ...], part: slice) -> None:
+        each(codes, rows, float(height), results[part])
+
+    _run(chunk, columns, 1 if plain else workers, plain)
+    return results.reshape(columns[0].shape)
 
 
 def launches_of(constants: Constants, step: float) -> Launches:
     """Return one set of constants at one step, in seconds, as a launch (arrays without axes)."""
     terminal = np.inf if constants.terminal_speed is None else constants.terminal_speed
-    six = (constants.gravity, constants.launch_speed, step, constants.grain, constants.fall_factor, terminal)
+    six = (constants.pull, constants.launch_speed, step, constants.grain, constants.fall_factor, terminal)
     return Launches(*(np.asarray(number, dtype=np.float64) for number in six))
 
 
-def rule_codes(rule: Rule) -> kernel.Codes:
-    """Return the rule as the numbers that the kernel knows."""
+def rule_codes(rule: Rule, second: Second | None = None) -> kernel.Codes:
+    """Return the rule, and a second jump, as the numbers that the kernel knows."""
     return (
         INTEGRATOR_CODES[rule.integrator],
         MODE_CODES[rule.rounding.mode],
@@ -147,6 +192,9 @@ def rule_codes(rule: Rule) -> kernel.Codes:
         float(rule.contact_tolerance),
         float(rule.position.grain),
         MODE_CODES[rule.position.mode],
+        kernel.NO_SECOND if second is None else kernel.SET if second.how is How.SET else kernel.ADD,
+        0.0 if second is None else float(second.launch_speed),
+        kernel.AT_APEX if second is None or second.when is None else float(second.when),
     )
 
 
@@ -156,8 +204,23 @@ def _empty(size: int) -> tuple[NDArray[Any], ...]:
     return tuple(np.empty(size, dtype=kind) for kind in kinds)
 
 
-def _run(task: Callable[[int], None], starts: range, workers: int) -> None:
-    """Run every chunk; what stops one stops all."""
+def _run(
+    fly: Callable[[tuple[Any, ...], slice], None],
+    columns: tuple[NDArray[np.float64], ...],
+    workers: int,
+    plain: bool,
+) -> None:
+    """Fly every chunk of the launches, given as rows and a part of the results; what stops one stops all."""
+    shape, size = columns[0].shape, columns[0].size
+
+    def task(start: int) -> None:
+        stop = min(start + CHUNK, size)
+        place = np.unravel_index(np.arange(start, stop), shape) if shape else ()
+        rows = [np.atleast_1d(column[place]) for column in columns]
+        # Plain Python needs Python's own floats: quicker, and they never warn.
+        fly(tuple(row.tolist() for row in rows) if plain else tuple(rows), slice(start, stop))
+
+    starts = range(0, size, CHUNK)
     if workers == 1 or len(starts) < 2:
         for start in starts:
             task(start)
@@ -170,11 +233,13 @@ def _run(task: Callable[[int], None], starts: range, workers: int) -> None:
         pool.shutdown(cancel_futures=True)
 
 
-def _is_large(launches: Launches, level: float, size: int) -> bool:
+def _is_large(launches: Launches, level: float, size: int, second: Second | None) -> bool:
     """Guess from the unrounded jump whether stepping is more than plain Python should do."""
     if size > PLAIN_STEPS:
         return True
     gravity, launch_speed, step, _, fall_factor, _ = launches.broadcast()
+    if second is not None:
+        launch_speed = launch_speed + second.launch_speed
     with np.errstate(all="ignore"):
         rise = np.abs(launch_speed) / gravity
         drop = 0.5 * launch_speed * rise + max(-level, 0.0)
@@ -182,9 +247,10 @@ def _is_large(launches: Launches, level: float, size: int) -> bool:
         return float(np.sum(np.fmin(flight, LONGEST_FLIGHT) / step)) > PLAIN_STEPS
 
 
-def _validate(rule: Rule, launches: Launches, level: float, workers: int) -> None:
+def _validate(rule: Rule, launches: Launches, level: float, workers: int, second: Second | None) -> None:
     """Raise InputError, with every fault, where the kernel could not make sense of a number."""
     seconds = f"{SHORTEST_STEP:g} to {LARGEST_NUMBER:g} s"
+    speed, when = (1.0, 0.0) if second is None else (second.launch_speed, second.when or 0.0)
     checks = (
         ("gravity", launches.gravity, lambda x: (x > 0.0) & (x <= LARGEST_NUMBER), "more than 0"),
         ("launch_speed", launches.launch_speed, lambda x: np.abs(x) <= LARGEST_NUMBER, "a finite number"),
@@ -201,6 +267,8 @@ def _validate(rule: Rule, launches: Launches, level: float, workers: int) -> Non
         ),
         ("level", level, lambda x: np.abs(x) <= LARGEST_NUMBER, "a finite number"),
         ("workers", workers, lambda x: x >= 1, "1 or more"),
+        ("second.launch_speed", speed, lambda x: (x > 0.0) & (x <= LARGEST_NUMBER), "more than 0"),
+        ("second.when", when, lambda x: (x >= 0.0) & (x <= LARGEST_NUMBER), "0 s or later"),
     )
     faults = []
     for name, given, is_usable, allowed in checks:

@@ -35,6 +35,16 @@ class TwinRule:
 
 
 @dataclass(frozen=True, slots=True)
+class TwinSecond:
+    """A second jump in the air, in the words of a brief."""
+
+    launch_speed: float
+    when: float | str
+    """ "apex", or seconds."""
+    how: str
+
+
+@dataclass(frozen=True, slots=True)
 class TwinJump:
     """What became of a jump; None where it does not land."""
 
@@ -74,16 +84,73 @@ def jump(
     fall_factor: float = 1.0,
     terminal_speed: float = math.inf,
     level: float = 0.0,
+    second: TwinSecond | None = None,
 ) -> TwinJump:
     """One jump from height 0."""
-    h = step
+    numbers = (gravity, launch_speed, step, grain, fall_factor, terminal_speed)
+    ys, vs, landed, started = _samples(rule, numbers, level, second)
+    return _landed(rule, ys, vs, step, level) if landed else TwinJump(_never(vs, started))
+
+
+def time_above(
+    rule: TwinRule,
+    gravity: float,
+    launch_speed: float,
+    step: float,
+    height: float,
+    *,
+    grain: float = 0.0,
+    fall_factor: float = 1.0,
+    terminal_speed: float = math.inf,
+    second: TwinSecond | None = None,
+) -> float | None:
+    """The longest stay above a height before the landing at 0 (or at the height, if lower); None: no landing.
+
+    All stays are listed from the samples of the whole flight, and then the longest is taken.
+    """
+    numbers = (gravity, launch_speed, step, grain, fall_factor, terminal_speed)
+    ys, _, landed, _ = _samples(rule, numbers, min(0.0, height), second)
+    if not landed:
+        return None
+    near = rule.contact_tolerance
+
+    def moment(n: int) -> float:
+        """When step n crosses the height."""
+        if rule.landing_test != "swept":
+            return n * step
+        share = (height - ys[n - 1]) / (ys[n] - ys[n - 1])
+        return (n - 1) * step + step * min(1.0, max(0.0, share))
+
+    stays: list[float] = []
+    since = 0.0 if height - near <= 0 else None
+    for n in range(1, len(ys)):
+        if since is None:
+            if ys[n] > ys[n - 1] and ys[n] >= height - near:
+                since = moment(n)
+        elif ys[n] < ys[n - 1] and ys[n] <= height + near:
+            stays.append(moment(n) - since)
+            since = None
+    return max([0.0, *stays])
+
+
+def _samples(
+    rule: TwinRule,
+    numbers: tuple[float, float, float, float, float, float],
+    level: float,
+    second: TwinSecond | None,
+) -> tuple[list[float], list[float], bool, bool]:
+    """Heights and velocities to the landing or the longest flight; does it land; did it get so high."""
+    gravity, launch_speed, h, grain, fall_factor, terminal_speed = numbers
     longest = math.floor(30 / h + 0.5)
     ys, vs = [0.0], [launch_speed]
     e = 0.0
-    landing = None
     started = level <= 0
+    to_come = second
     for n in range(1, longest + 1):
         y, v = ys[-1], vs[-1]
+        if to_come is not None and _due(to_come, n, v, h):
+            v = to_come.launch_speed if to_come.how == "set" else v + to_come.launch_speed
+            to_come = None
         g = gravity if v > 0 else gravity * fall_factor
         a = g * h
         if n == 1 and not rule.launch_gravity:
@@ -109,11 +176,15 @@ def jump(
         # For a level above the take-off the test starts where the jump is first at or above it, n = 0 too.
         started = started or ys[n] >= level - rule.contact_tolerance or level - rule.contact_tolerance <= 0
         if started and ys[n] <= level + rule.contact_tolerance and ys[n] < ys[n - 1]:
-            landing = n
-            break
-    if landing is None:
-        return TwinJump(_never(vs, started))
-    return _landed(rule, ys, vs, h, level)
+            return ys, vs, True, started
+    return ys, vs, False, started
+
+
+def _due(second: TwinSecond, n: int, v: float, h: float) -> bool:
+    """Whether step n, which starts with v, is one at whose start the second jump may act."""
+    if second.when == "apex":
+        return n > 1 and v <= 0
+    return (n - 1) * h >= float(second.when)
 
 
 def _never(vs: list[float], started: bool) -> str:
