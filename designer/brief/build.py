@@ -2,61 +2,72 @@
 
 from __future__ import annotations
 
-import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
+from dataclasses import replace
 from difflib import get_close_matches
 from typing import Any
 
+from designer.brief.assemble import EXAMPLES, MISSING, as_rule, names_twice, with_jumps
 from designer.brief.choices import Path, Reader
-from designer.brief.keys import KNOWN, LISTS, TABLES, unknown_key
+from designer.brief.features import Features, bound
+from designer.brief.fields import Context, read_text
+from designer.brief.keys import KNOWN, LISTS, TABLES, TOP_CONSTANTS, unknown_key
+from designer.brief.levels import LevelReader
 from designer.brief.model import Brief, Choice, Gap, JumpBrief, Ledge, Loop, NamedSet, Rates, Target
 from designer.brief.rates import merge_rates
-from designer.brief.schema import Context, _text, check_table, read_units, wrong_shape
-from designer.brief.units import Misread, Units, plain
-from designer.motion.measures import MEASURES
+from designer.brief.schema import check_table, read_units, wrong_shape
+from designer.brief.several import ReadJump, read_jumps, split_set
+from designer.brief.targets import read_targets
+from designer.brief.terms import DEFAULTS, Terms, Top, as_choice, as_constants
+from designer.brief.units import Misread, Units
+from designer.errors import Fault, InputError
 from designer.motion.rule import (
     CONSTANT_NAMES,
-    CONTACT_TOLERANCE,
-    SEARCHABLE,
+    SHARED,
     Constants,
     FrameTime,
-    PositionRounding,
-    Rounding,
-    Rule,
 )
-
-DEFAULTS = {
-    "grain": 0.0,
-    "run_speed": 0.0,
-    "fall_factor": 1.0,
-    "terminal_speed": math.inf,
-    "step_up": 0.0,
-    "edge_allowance": 0.0,
-}
-"""Constants that need not be said (DEVELOPERS.md, brief); infinity means no terminal speed."""
 
 
 class Builder:
     """Reads every table of a brief, gathers all that is wrong, and builds the brief where nothing is."""
 
-    def __init__(self, raw: Mapping[str, Any], name: str) -> None:
+    def __init__(
+        self, raw: Mapping[str, Any], name: str, levels: Callable[[str], tuple[str, str]] | None = None
+    ) -> None:
         self.raw = raw
         self.name = name
+        self.faults: list[Fault] = []
+        """What is wrong in the level list, which has lines of its own."""
+        self._open = levels
         self.wrong: list[tuple[Path, Misread]] = []
         self.tables: dict[str, Any] = {}
         """The model of each table that is there and in order."""
+        self.several = "jumps" in raw
+        self.jumps: list[ReadJump] = []
+        self._jumps_whole = True
+        self.in_sets: dict[int, Mapping[str, Mapping[str, float]]] = {}
+        """What each of [[sets]] says of single jumps."""
+        self.features = Features()
+        self.terms: Terms | None = None
+        """What the constants of several jumps are made of; None where that cannot be told, or of one jump."""
 
     def build(self) -> Brief | None:
         """Return the brief, or None where `wrong` says what is."""
         self._names()
         units, wrong = read_units(self.raw.get("units"))
         self.wrong += wrong
-        self._read_tables(units)
+        context = Context(Reader(units, self._frame_time()))
+        self._read_jumps(context)
+        self._read_tables(context)
+        self._bind()
+        self._levels(units)
         self._loop()
         self._constants()
-        targets = self._targets(units)
+        targets = self._targets(context.reader)
+        self._settle()
         self._twice()
-        if self.wrong:
+        if self.wrong or self.faults:
             return None
         return self._brief(units, targets)
 
@@ -66,19 +77,37 @@ class Builder:
                 self.wrong.append(((key,), unknown_key("", key)))
         if "title" in self.raw:
             try:
-                _text(self.raw["title"])
+                read_text(self.raw["title"])
             except Misread as misread:
                 self.wrong.append((("title",), misread))
 
-    def _read_tables(self, units: Units) -> None:
+    def _read_jumps(self, context: Context) -> None:
+        if self.several:
+            self.jumps, wrong = read_jumps(self.raw["jumps"], context)
+            self.wrong += wrong
+            self._jumps_whole = not wrong
+
+    def _read_tables(self, context: Context) -> None:
         for section in ("loop", "rule"):
             misspelled = get_close_matches(section, [key for key in self.raw if key not in KNOWN[""]], 1)
-            if section not in self.raw and not misspelled and "with" not in self.raw:
-                self.wrong.append(((section,), _MISSING[section]))
-        context = Context(Reader(units, self._frame_time()))
+            if section not in self.raw and not misspelled:
+                self.wrong.append(((section,), MISSING[section]))
         for section in (*TABLES, *LISTS):
             if section in self.raw and section not in ("units", "targets"):
                 self._read_table(section, self.raw[section], context)
+        if not self.several:
+            for section in ("today", "search"):
+                if "gravity_factor" in self._raw(section):
+                    self.wrong.append(((section, "gravity_factor"), unknown_key(section, "gravity_factor")))
+
+    def _bind(self) -> None:
+        """Check which jumps each feature binds, and keep the features."""
+        names = [jump.name for jump in self.jumps]
+        for section in LISTS:
+            for index, table in self.tables.get(section, ()) if section != "sets" else ():
+                by, wrong = bound(table, names, several=self.several)
+                self.wrong += [((section, index, *path), misread) for path, misread in wrong]
+                self.features.add(section, table, by, {})
 
     def _frame_time(self) -> FrameTime:
         """Return the frame time as far as it can be told; [rule] itself reports what is wrong with it."""
@@ -96,10 +125,44 @@ class Builder:
             return
         models = []
         for index, item in enumerate(raw):
-            model, wrong = check_table(section, item, (section, index), context)
+            rest = self._split_set(item, index, context) if section == "sets" else item
+            model, wrong = check_table(section, rest, (section, index), context)
             self.wrong += wrong
             models.append((index, model))
         self.tables[section] = [(index, model) for index, model in models if model is not None]
+
+    def _levels(self, units: Units) -> None:
+        """Read the level list, whose rows count as ledges and gaps."""
+        if "levels" not in self.raw:
+            return
+        said = self.raw["levels"]
+        if not isinstance(said, str) or not said.strip():
+            words = 'the name of a level list in CSV, as in levels = "roofs.csv"'
+            self.wrong.append((("levels",), Misread(words, fix="write the file's name in quotation marks")))
+            return
+        if self._open is None:
+            words = "a level list only in a brief that is a file: its name starts from the brief's folder"
+            self.wrong.append((("levels",), Misread(words, fix="save the brief, and read it from its file")))
+            return
+        try:
+            name, text = self._open(said)
+        except InputError as error:
+            self.faults += error.faults
+            return
+        reader = LevelReader(name, units, [jump.name for jump in self.jumps], several=self.several)
+        reader.read(text)
+        self.faults += reader.faults
+        self.features.ledges += [one for one in reader.features if isinstance(one, Ledge)]
+        self.features.gaps += [one for one in reader.features if isinstance(one, Gap)]
+
+    def _split_set(self, item: object, index: int, context: Context) -> object:
+        """Return one of [[sets]] without what it says of single jumps, which is kept."""
+        names = [jump.name for jump in self.jumps]
+        rest, self.in_sets[index], wrong = split_set(item, names, ("sets", index), context)
+        if not self.several and isinstance(item, dict) and "gravity_factor" in item:
+            wrong.append((("sets", index, "gravity_factor"), unknown_key("sets", "gravity_factor")))
+        self.wrong += wrong
+        return rest
 
     def _raw(self, section: str) -> Mapping[str, Any]:
         table = self.raw.get(section)
@@ -144,10 +207,8 @@ class Builder:
 
     def _constants(self) -> None:
         """Check that every constant without a default is said where it is wanted."""
-        if "with" in self.raw or "jumps" in self.raw:
-            return  # these may say what is missing here, and are refused as not yet known
         said = [section for section in ("today", "search") if section in self.raw]
-        if not said:
+        if not said and not any(jump.has_search or jump.has_today for jump in self.jumps):
             words = "[today] with the constants of the build, or [search] with what may change, or both"
             fix = "add [today] with gravity = … and launch_speed = …"
             self.wrong.append(((), Misread(words, fix=fix)))
@@ -155,41 +216,54 @@ class Builder:
         if any(not isinstance(self.raw[section], dict) for section in said):
             return
         for name in self._needed():
+            if self.several and name not in SHARED:
+                continue  # each jump may name it for itself
             if not any(name in self.raw[section] for section in said):
                 words = f"{name} in [today] or [search]; it has no default"
-                self.wrong.append(((said[0], name), Misread(words, fix=f"add {name} = {_EXAMPLES[name]}")))
-        if "search" in said and "targets" not in self.raw:
-            words = "[targets]: a search needs to know what is wanted"
-            fix = "add [targets] with, for example, apex = { aim = 120, within = 2 }"
-            self.wrong.append((("targets",), Misread(words, fix=fix)))
+                at: Path = (said[0], name) if said else ()
+                self.wrong.append((at, Misread(words, fix=f"add {name} = {EXAMPLES[name]}")))
 
-    def _targets(self, units: Units) -> tuple[Target, ...]:
-        raw = self.raw.get("targets", {})
-        if not isinstance(raw, dict):
-            words = (
-                "[targets] alone on a line, then one line a measure, as in apex = { aim = 120, within = 2 }"
-            )
-            self.wrong.append((("targets",), Misread(words, fix="write [targets]")))
+    def _searched(self) -> bool:
+        return "search" in self.raw or any(jump.has_search for jump in self.jumps)
+
+    def _targets(self, reader: Reader) -> tuple[Target, ...]:
+        """Return the targets of [targets]; of several jumps each has its own."""
+        if self.several:
+            if "targets" in self.raw:
+                words = "the targets of each jump in [jumps.NAME]; [targets] only in a brief without [jumps]"
+                fix = "move them to the jump that is meant, as in [jumps.walk.targets]"
+                self.wrong.append((("targets",), Misread(words, fix=fix)))
+            elif self._searched() and self._jumps_whole and not any(jump.targets for jump in self.jumps):
+                words = "targets for at least one jump: a search needs to know what is wanted"
+                fix = "add targets = { apex = { aim = 120, within = 2 } } to a jump"
+                self.wrong.append((("jumps",), Misread(words, fix=fix)))
             return ()
-        if not raw and "targets" in self.raw and "search" in self.raw:
-            words = "at least one target where there is [search]"
-            self.wrong.append((("targets",), Misread(words, fix="add apex = { aim = 120, within = 2 }")))
-        targets: list[Target] = []
-        for measure, item in raw.items():
-            if measure not in MEASURES:
-                self.wrong.append((("targets", measure), unknown_key("targets", measure)))
-                continue
-            context = Context(Reader(units, self._frame_time()), measure)
-            model, wrong = check_table("targets", item, ("targets", measure), context)
-            if isinstance(item, dict):
-                wrong += _wishes(measure, item, model)
-            self.wrong += wrong
-            if model is not None:
-                values = {
-                    key: getattr(model, key) for key in ("within", "weight", "aim", "at_least", "at_most")
-                }
-                targets.append(Target(measure, **values))
-        return tuple(targets)
+        if "targets" not in self.raw:
+            if self._searched():
+                words = "[targets]: a search needs to know what is wanted"
+                fix = "add [targets] with, for example, apex = { aim = 120, within = 2 }"
+                self.wrong.append((("targets",), Misread(words, fix=fix)))
+            return ()
+        targets, wrong = read_targets(self.raw["targets"], ("targets",), reader, wanted=self._searched())
+        self.wrong += wrong
+        return targets
+
+    def _settle(self) -> None:
+        """Settle what the constants of several jumps are made of, where all that says so is in order."""
+        broken = any(s in self.raw and self.tables.get(s) is None for s in ("loop", "today", "search"))
+        if not self.several or not self._jumps_whole or broken:
+            return
+        named = {
+            section: {
+                name: value
+                for name in CONSTANT_NAMES
+                if (value := getattr(self.tables.get(section), name, None)) is not None
+            }
+            for section in ("search", "today")
+        }
+        needed = tuple(self._needed())
+        self.terms = Terms(self.jumps, Top(named["search"], named["today"], needed))
+        self.wrong += self.terms.wrong
 
     def _twice(self) -> None:
         """Check that no name stands twice, and that no set takes a name which commands use."""
@@ -197,26 +271,39 @@ class Builder:
             raw = self.raw.get(section)
             tables = raw if isinstance(raw, list) else []
             names = [table.get("name") if isinstance(table, dict) else None for table in tables]
-            self._names_twice(section, [name if isinstance(name, str) else "" for name in names])
+            self.wrong += names_twice(section, [name if isinstance(name, str) else "" for name in names])
         if any(section in self.raw and self.tables.get(section) is None for section in ("today", "search")):
             return  # what a set may fall back on is not known
         for index, table in self.tables.get("sets", ()):
+            if self.several:
+                self._said_in_set(index, table)
+                continue
             for name in self._needed():
                 if getattr(table, name) is None and self._base_value(name) is None:
                     words = f"{name}, which neither [today] nor a fixed value of [search] gives"
                     self.wrong.append((("sets", index, name), Misread(words, fix=f"add {name} = …")))
 
-    def _names_twice(self, section: str, names: list[str]) -> None:
-        seen: dict[str, int] = {}
-        for index, name in enumerate(names):
-            path = (section, index, "name")
-            first = seen.setdefault(name.strip().casefold(), index)
-            if name and first != index:
-                words = f"a name of its own for each of [[{section}]]; number {first + 1} has it already"
-                self.wrong.append((path, Misread(words, fix="give one of them another name")))
-            if section == "sets" and name == "today":
-                words = 'a name other than "today", which is the set of [today]'
-                self.wrong.append((path, Misread(words, fix='name it differently, as in "yesterday"')))
+    def _said_in_set(self, index: int, table: Any) -> None:
+        """Check that a set of several jumps says all that nothing else says."""
+        if self.terms is None or self.terms.wrong:
+            return
+        for name in self._needed():
+            lack = [
+                one.name
+                for one in self.jumps
+                if self._in_set(self.terms, index, table, one.name)[name] is None
+            ]
+            if lack:
+                who = "" if name in SHARED else f" for {', '.join(lack)}"
+                words = f"{name}{who}, which neither today nor a fixed value of a search gives"
+                fix = f"add {name} = …" if name in SHARED else f"add {lack[0]} = {{ {name} = … }}"
+                self.wrong.append((("sets", index, name), Misread(words, fix=fix)))
+
+    def _in_set(self, terms: Terms, index: int, table: Any, jump: str) -> dict[str, float | None]:
+        """Return what a set makes of the constants of one of several jumps."""
+        said = {name: getattr(table, name) for name in CONSTANT_NAMES}
+        top = {name: value for name, value in said.items() if value is not None}
+        return terms.in_set(jump, top, self.in_sets[index])
 
     def _base_value(self, name: str) -> float | None:
         """Return what a constant is where nothing else is said: today's, else search's only value."""
@@ -234,14 +321,14 @@ class Builder:
         values = {name: self._base_value(name) for name in CONSTANT_NAMES}
         if values["gravity"] is None or values["launch_speed"] is None:
             return None
-        return _as_constants(values)
+        return as_constants(values)
 
     def _today(self) -> Constants | None:
         """Return the build's constants; None where [today] does not give all that have no default."""
         today = self.tables.get("today")
         if today is None or any(getattr(today, name) is None for name in self._needed()):
             return None
-        return _as_constants({name: getattr(today, name) for name in CONSTANT_NAMES})
+        return as_constants({name: getattr(today, name) for name in CONSTANT_NAMES})
 
     def _search(self) -> dict[str, Choice] | None:
         """Return a choice for each constant that the loop has; step_up and edge_allowance are fixed ones."""
@@ -250,26 +337,28 @@ class Builder:
             return None
         fixed = self.tables["loop"].steps == Loop.FIXED
         choices: dict[str, Choice] = {}
-        for name in CONSTANT_NAMES:
+        for name in TOP_CONSTANTS:
             if name == "step" and not fixed:
                 continue
             chosen = getattr(search, name)
-            if name not in SEARCHABLE and chosen is not None:
-                chosen = Choice((chosen,), text=plain(chosen))
             if chosen is None:
-                value = self._base_value(name)
-                if value is None:
+                chosen = self._base_value(name)
+                if chosen is None:
                     continue  # reported already: it is named nowhere
-                chosen = Choice((value,), text="none" if math.isinf(value) else plain(value))
-            choices[name] = chosen
+            choices[name] = as_choice(chosen)
         return choices
 
     def _sets(self) -> tuple[NamedSet, ...]:
         sets = []
-        for _, table in self.tables.get("sets", ()):
+        for index, table in self.tables.get("sets", ()):
+            if self.terms is not None:
+                each = [self._in_set(self.terms, index, table, jump.name) for jump in self.jumps]
+                jumps = tuple(as_constants(values) for values in each)
+                sets.append(NamedSet(table.name, jumps[0], jumps))
+                continue
             own = {name: getattr(table, name) for name in CONSTANT_NAMES}
             values = {n: self._base_value(n) if value is None else value for n, value in own.items()}
-            sets.append(NamedSet(table.name, _as_constants(values)))
+            sets.append(NamedSet(table.name, as_constants(values)))
         return tuple(sets)
 
     def _rates(self) -> Rates:
@@ -281,75 +370,23 @@ class Builder:
 
     def _brief(self, units: Units, targets: tuple[Target, ...]) -> Brief:
         loop = self.tables["loop"]
-        ledges = [t for _, t in self.tables.get("ledges", ())]
-        gaps = [t for _, t in self.tables.get("gaps", ())]
-        return Brief(
+        brief = Brief(
             name=self.name,
             title=str(self.raw.get("title", self.name)).strip(),
             length_unit=units.length,
             loop=Loop(loop.steps),
-            rule=_as_rule(self.tables["rule"]),
+            rule=as_rule(self.tables["rule"]),
             rates=self._rates(),
             aim_at=loop.aim_at,
-            today=self._today(),
-            search=self._search(),
-            base=self._base(),
             jumps=(JumpBrief(targets=targets),),
-            ledges=tuple(Ledge(t.name, t.height, t.must, t.margin) for t in ledges),
-            gaps=tuple(Gap(t.name, t.width, t.must, t.far_level, t.margin) for t in gaps),
+            ledges=tuple(self.features.ledges),
+            gaps=tuple(self.features.gaps),
+            blocks=tuple(self.features.blocks),
+            ceilings=tuple(self.features.ceilings),
             sets=self._sets(),
             lengths={name: float(length) for name, length in units.named.items()},
         )
-
-
-_EXAMPLES = {"gravity": "1600", "launch_speed": "620", "step": '"8 ms"'}
-
-_MISSING = {
-    "loop": Misread(
-        '[loop] with steps = "each-frame" or "fixed": who decides how long a step is',
-        fix='add [loop], and below it steps = "each-frame" and aim_at = "60 Hz", or steps = "fixed"',
-    ),
-    "rule": Misread(
-        "[rule] with the integrator that the build uses: explicit, semi-implicit or average",
-        fix='add [rule], and below it integrator = "semi-implicit"',
-    ),
-}
-
-
-def _wishes(measure: str, raw: Mapping[str, Any], model: Any | None) -> list[tuple[Path, Misread]]:
-    """Return what is wrong between the keys of one target."""
-    path: Path = ("targets", measure)
-    if "aim" in raw and ("at_least" in raw or "at_most" in raw):
-        words = "either aim, or at_least and at_most, not aim together with a bound"
-        return [(path, Misread(words, fix="keep the aim, or keep the bounds"))]
-    if not any(key in raw for key in ("aim", "at_least", "at_most")):
-        words = "aim, at_least or at_most beside within"
-        return [(path, Misread(words, fix="add aim = …, at_least = … or at_most = …"))]
-    if model is not None and model.at_least is not None and model.at_most is not None:
-        low, high = model.at_least, model.at_most
-        if low > high:
-            words = "at_least that is not above at_most"
-            bounds = f"at_least = {plain(high)}, at_most = {plain(low)}"
-            return [(path, Misread(words, better=f"{{ {bounds}, within = {plain(model.within)} }}"))]
-    return []
-
-
-def _as_constants(values: Mapping[str, float | None]) -> Constants:
-    """Return constants with the defaults filled in; infinity becomes no terminal speed."""
-    said = {name: value for name, value in values.items() if value is not None}
-    if math.isinf(said.get("terminal_speed", math.inf)):
-        said.pop("terminal_speed", None)
-    return Constants(**said)
-
-
-def _as_rule(table: Any) -> Rule:
-    tolerance = CONTACT_TOLERANCE if table.contact_tolerance is None else table.contact_tolerance
-    return Rule(
-        integrator=table.integrator,
-        rounding=Rounding(table.rounding.mode, table.rounding.at, table.rounding.carry),
-        frame_time=table.frame_time,
-        landing_test=table.landing_test,
-        launch_gravity=table.launch_gravity,
-        contact_tolerance=tolerance,
-        position=PositionRounding(table.position.grain, table.position.mode),
-    )
+        if self.terms is not None:
+            said = "today" in self.raw or any(jump.has_today for jump in self.jumps)
+            return with_jumps(brief, self.jumps, self.terms, today=said, searched=self._searched())
+        return replace(brief, today=self._today(), search=self._search(), base=self._base())

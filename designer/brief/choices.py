@@ -1,4 +1,4 @@
-"""What a search may do with one constant: a value, a range, a list or "free"; the arithmetic of ranges."""
+"""What a search may do with one constant: a value, a range, a list, "free" or a link; ranges."""
 
 from __future__ import annotations
 
@@ -11,7 +11,7 @@ from fractions import Fraction
 from designer.brief.model import Choice
 from designer.brief.rates import split_rate, step_of
 from designer.brief.units import Limits, Misread, Misreadings, Units, exact, plain
-from designer.motion.rule import FrameTime
+from designer.motion.rule import SEARCHABLE, FrameTime
 
 MOST_POINTS = 100_000
 """More points than this in one range are taken for a slip of the increment."""
@@ -25,11 +25,19 @@ LIMITS: Mapping[str, Limits] = {
     "terminal_speed": Limits("speed", 0, beyond=True, none=True),
     "step_up": Limits("length", 0),
     "edge_allowance": Limits("length", 0),
+    "gravity_factor": Limits("number", 0, beyond=True),
 }
 """What each constant may be; the step, which is a time or a rate, is read by `Reader.step`."""
 
+TIMES = Limits("number", 0, beyond=True)
+"""What the factor of a link may be."""
+
+FREE = SEARCHABLE
+"""Constants whose bounds can be derived from the targets."""
+
 STEP = 'a step with its unit: "8 ms" or "128 Hz" (0.1 to 1000 ms), or seconds as a number (0.008)'
-_SHAPES = '{ from = …, to = …, every = … }, { among = [ … ] } or "free"'
+_SHAPES = "{ from = …, to = …, every = … }, { among = [ … ] }"
+_OR_FREE = ' or "free"'
 
 Path = tuple[str | int, ...]
 
@@ -46,6 +54,16 @@ def range_points(low: Fraction, high: Fraction, every: Fraction) -> tuple[float,
 
 
 @dataclass(frozen=True, slots=True)
+class Link:
+    """A constant that follows another jump's: { of = "walk", times = … }."""
+
+    of: str
+    """The name of the other jump."""
+    times: Choice | None
+    """What it is multiplied by; None where it is the same."""
+
+
+@dataclass(frozen=True, slots=True)
 class Reader:
     """Reads constants in the brief's own units and frame time."""
 
@@ -56,7 +74,7 @@ class Reader:
         """Return one constant in the brief's units (the step in seconds; infinity for no terminal speed)."""
         if name == "step":
             return self.step(value)
-        limits = LIMITS[name]
+        limits = _limits(name)
         if limits.none and value == "none":
             return math.inf
         return float(limits.read(value, self.units))
@@ -73,7 +91,7 @@ class Reader:
 
     def choice(self, name: str, value: object) -> Choice:
         """Return what the search may do with a constant; Misread or Misreadings say what is wrong."""
-        if value == "free":
+        if value == "free" and name in FREE:
             return Choice(None, text="free")
         if isinstance(value, list):
             inside = ", ".join(_as_written(item) for item in value)
@@ -84,11 +102,42 @@ class Reader:
             return Choice((self.constant(name, value),), text=_bare(value))
         if "among" in value:
             return self._among(name, value)
+        if "of" in value and "from" not in value and "to" not in value:
+            raise Misreadings((("of",), _NO_LINK))
         return self._range(name, value)
 
+    def own_choice(self, name: str, value: object) -> Choice | Link:
+        """Return what the search may do with a jump's own constant, or the link that it follows."""
+        if isinstance(value, dict) and ("of" in value or "times" in value):
+            return self._link(name, value)
+        return self.choice(name, value)
+
+    def _link(self, name: str, table: Mapping[str, object]) -> Link:
+        allowed = f'a link: {{ of = "walk", times = 0.85 }}, {name} of another jump, times a factor'
+        wrong: list[tuple[Path, Misread]] = [
+            ((key,), Misread(allowed, fix=f"take {key} out of the link"))
+            for key in table
+            if key not in ("of", "times")
+        ]
+        of, times = table.get("of"), None
+        if "of" not in table:
+            wrong.append(((), Misread(f"{allowed}; of is missing", fix='add of = "…" with the jump\'s name')))
+        elif not isinstance(of, str):
+            wrong.append((("of",), Misread(allowed, better=f'"{of}"')))
+        if "times" in table:
+            try:
+                times = self.choice("times", table["times"])
+            except Misread as misread:
+                wrong.append((("times",), misread))
+            except Misreadings as several:
+                wrong += [(("times", *path), misread) for path, misread in several.items]
+        if wrong or not isinstance(of, str):
+            raise Misreadings(*wrong)
+        return Link(of.strip(), times)
+
     def _allowed(self, name: str) -> str:
-        limits = STEP if name == "step" else LIMITS[name].describe(self.units)
-        return f"{limits}; or {_SHAPES}"
+        limits = STEP if name == "step" else _limits(name).describe(self.units)
+        return f"{limits}; or {_SHAPES}{_OR_FREE if name in FREE else ''}"
 
     def _among(self, name: str, table: Mapping[str, object]) -> Choice:
         wrong = _unknown(table, ("among",), self._allowed(name))
@@ -144,7 +193,7 @@ class Reader:
             return self._increment(name, value)
         if name == "step":
             return self._split_step(value)
-        limits = LIMITS[name]
+        limits = _limits(name)
         if limits.none and value == "none":
             raise Misread(
                 f'{limits.describe(self.units)}; "none" is no end of a range', fix="use { among = [ … ] }"
@@ -152,7 +201,7 @@ class Reader:
         return limits.read(value, self.units), ""
 
     def _increment(self, name: str, value: object) -> tuple[Fraction, str]:
-        kind = "number" if name == "step" else LIMITS[name].kind
+        kind = "number" if name == "step" else _limits(name).kind
         words = "an increment above 0" + ('; "0.5 ms", "1 Hz"' if name == "step" else "")
         if isinstance(value, str) and name == "step":
             figures, _, unit = value.strip().partition(" ")
@@ -186,12 +235,21 @@ class Reader:
         return Choice(None, ends[0], ends[1], text)
 
 
+_NO_LINK = Misread(
+    "a link to another jump only in the search of a jump, [jumps.NAME]",
+    fix='write a value, a range, a list or "free"',
+)
+
+
+def _limits(name: str) -> Limits:
+    return TIMES if name == "times" else LIMITS[name]
+
+
 def _unknown(table: Mapping[str, object], known: tuple[str, ...], allowed: str) -> list[tuple[Path, Misread]]:
     wrong: list[tuple[Path, Misread]] = []
     for key in table:
         if key in ("of", "times"):
-            words = "not yet known in this version: a constant that follows another jump's"
-            wrong.append(((key,), Misread(words, fix='write a value, a range, a list or "free"')))
+            wrong.append(((key,), _NO_LINK))
         elif key not in known:
             close = get_close_matches(key.lower(), known, 1)
             fix = f"{close[0]} is probably meant" if close else f"take {key} out"

@@ -8,13 +8,18 @@ from difflib import get_close_matches
 
 from designer.brief.units import Misread, exact
 from designer.motion.measures import MEASURES
-from designer.motion.rule import CONSTANT_NAMES
+from designer.motion.rule import CONSTANT_NAMES, OWN, SHARED
 
 TABLES = ("units", "loop", "rule", "today", "search", "targets", "rates")
-LISTS = ("ledges", "gaps", "sets")
+LISTS = ("ledges", "gaps", "blocks", "ceilings", "sets")
+
+TOP_CONSTANTS = tuple(name for name in CONSTANT_NAMES if name != "gravity_factor")
+"""Constants of [today] and [search]; gravity_factor has a meaning only where there are several jumps."""
+JUMP_CONSTANTS = (*OWN, "step_up", "edge_allowance")
+"""Constants that a jump may name for itself."""
 
 KNOWN: dict[str, tuple[str, ...]] = {
-    "": ("title", *TABLES, *LISTS),
+    "": ("title", "with", "levels", *TABLES, "jumps", *LISTS),
     "units": ("length", "time"),
     "loop": ("steps", "aim_at"),
     "rule": (
@@ -28,21 +33,28 @@ KNOWN: dict[str, tuple[str, ...]] = {
     ),
     "rule.rounding": ("mode", "at", "carry"),
     "rule.position": ("grain", "mode"),
-    "today": CONSTANT_NAMES,
-    "search": CONSTANT_NAMES,
+    "today": TOP_CONSTANTS,
+    "search": TOP_CONSTANTS,
     "targets": tuple(MEASURES),
     "targets.*": ("aim", "at_least", "at_most", "within", "weight"),
     "rates": ("supported", "watched", "spread_weight"),
-    "ledges": ("name", "height", "must", "margin"),
-    "gaps": ("name", "width", "far_level", "must", "margin"),
-    "sets": ("name", *CONSTANT_NAMES),
+    "jumps.*": ("search", "today", "targets", "weight", "like", "second"),
+    "jumps.*.search": JUMP_CONSTANTS,
+    "jumps.*.today": JUMP_CONSTANTS,
+    "jumps.*.second": ("launch_speed", "when", "how"),
+    "ledges": ("name", "height", "must", "margin", "by"),
+    "gaps": ("name", "width", "far_level", "must", "margin", "by"),
+    "blocks": ("name", "height", "length", "must", "margin", "by"),
+    "ceilings": ("name", "height", "body_height", "must", "margin", "by"),
+    "sets": ("name", *TOP_CONSTANTS),
+    "sets.*": JUMP_CONSTANTS,
 }
 """The keys of each table; "" is the top of the file."""
 
-_LATER_CONSTANTS = ("gravity_factor", "hold_factor", "hold_time", "release_factor", "cut", "drag", "number")
+_LATER_CONSTANTS = ("hold_factor", "hold_time", "release_factor", "cut", "drag", "number")
 
 LATER: dict[str, tuple[str, ...]] = {
-    "": ("with", "levels", "jumps", "keep", "windows", "human"),
+    "": ("keep", "windows", "human"),
     "rule": (
         "drag",
         "hold_factor",
@@ -55,17 +67,16 @@ LATER: dict[str, tuple[str, ...]] = {
         "number",
         "product",
         "fixed_point",
-        "second",
         "seed",
-        "body_height",
     ),
     "rule.rounding": ("seed", "product"),
     "today": _LATER_CONSTANTS,
     "search": _LATER_CONSTANTS,
     "sets": _LATER_CONSTANTS,
+    "sets.*": _LATER_CONSTANTS,
+    "jumps.*.today": _LATER_CONSTANTS,
+    "jumps.*.search": _LATER_CONSTANTS,
     "targets": ("clearance", "ceiling"),
-    "ledges": ("by",),
-    "gaps": ("by",),
     "rates": ("patterns", "jitter"),
 }
 """Names that a later version will know; refused as such, not as slips."""
@@ -75,18 +86,25 @@ NOT_YET = "not yet known in this version"
 
 def home(section: str) -> str:
     """Return where a table is in a brief: "in [rule]", "in [[ledges]]", "at the top of the file …"."""
-    if not section:
-        return "at the top of the file, before the first table"
-    if section == "targets.*":
-        return "in a target of [targets], as in apex = { aim = …, within = … }"
-    if section.startswith("rule."):
-        return f"in [rule], inside {section.removeprefix('rule.')} = {{ … }}"
+    special = {
+        "": "at the top of the file, before the first table",
+        "targets.*": "in a target of [targets], as in apex = { aim = …, within = … }",
+        "sets.*": "in a jump's part of one of [[sets]], as in walk = { launch_speed = … }",
+        "jumps.*": "in [jumps.NAME]",
+    }
+    if section in special:
+        return special[section]
+    for outer, name in (("jumps.*.", "[jumps.NAME]"), ("rule.", "[rule]")):
+        if section.startswith(outer):
+            inner = section.removeprefix(outer)
+            inside = f"in {inner} = {{ … }} of {name}", f"in {name}, inside {inner} = {{ … }}"
+            return inside[outer == "rule."]
     return f"in [[{section}]]" if section in LISTS else f"in [{section}]"
 
 
 def owners(key: str) -> str:
     """Return where a key belongs, "in [today] or [search]"; empty where no table knows it."""
-    found = [section for section, keys in KNOWN.items() if key in keys and section != "sets"]
+    found = [section for section, keys in KNOWN.items() if key in keys and not section.startswith("sets")]
     found = [section for section in found if "." not in section] or found
     return " or ".join([home(section) for section in found]).replace(" or in ", " or ")
 
@@ -98,8 +116,18 @@ def unknown_key(section: str, key: str) -> Misread:
         return Misread(f"{name} is {NOT_YET}", fix=f"leave {name} out; this version answers without it")
     known = KNOWN[section]
     allowed = f"{home(section)}: {', '.join(known)}"
+    if section.startswith(("jumps.*", "sets.*")):
+        special = _of_a_jump(section, key)
+        if special is not None:
+            return special
     if owners(key):
         return Misread(allowed, fix=f"{key} belongs {owners(key)}")
+    return _slip(section, key, allowed)
+
+
+def _slip(section: str, key: str, allowed: str) -> Misread:
+    """Return what to say of a key that no table knows: what it probably means."""
+    known = KNOWN[section]
     spelled = key.lower().replace("-", "_")
     close = get_close_matches(spelled, known, 1, cutoff=0.6)
     if close:
@@ -113,9 +141,32 @@ def unknown_key(section: str, key: str) -> Misread:
     return Misread(allowed, fix=f"take {key} out, or write # before it to keep it as a comment")
 
 
+ONE_GAME = {
+    "gravity": "one game has one gravity; use gravity_factor for a jump of a gravity of its own",
+    "step": "one game has one step, whatever the jump",
+    "grain": "one game has one grain, whatever the jump",
+}
+"""Why a jump cannot name what the game has one of."""
+
+
+def _of_a_jump(section: str, key: str) -> Misread | None:
+    """Return what to say of a constant in a place of a jump where it cannot stand; None of any other key."""
+    if key in SHARED:
+        fix = f"name {key} in [today] or [search], at the top level of the brief"
+        if section == "sets.*":
+            fix = f"name {key} in the set itself, beside its name"
+        if key == "gravity":
+            fix += "; or write gravity_factor = 0.9 here"
+        return Misread(ONE_GAME[key], fix=fix)
+    if section == "jumps.*" and key in JUMP_CONSTANTS:
+        words = f"{home(section)}: {', '.join(KNOWN[section])}"
+        return Misread(words, fix=f"write search = {{ {key} = … }}, or today = {{ {key} = … }}")
+    return None
+
+
 def _written(section: str, key: str) -> str:
     """Return a key as it is written in its table, a table's name with its brackets."""
-    return home(key).removeprefix("in ") if not section and key in TABLES + LISTS else key
+    return home(key).removeprefix("in ") if not section and key in (*TABLES, *LISTS, "jumps") else key
 
 
 def as_target(raw: object) -> str:

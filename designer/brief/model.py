@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from enum import StrEnum
 
-from designer.motion.rule import Constants, Rule
+from designer.motion.rule import Constants, Rule, Second
 
 ONLY_JUMP = "jump"
 """The name of the jump of a brief without [jumps]."""
@@ -99,12 +99,46 @@ class Target:
 
 
 @dataclass(frozen=True, slots=True)
+class Variable:
+    """One number that a search chooses: a shared constant, a jump's own one, or the factor of a link."""
+
+    name: str
+    """ "gravity", "walk.launch_speed", or "armour.launch_speed times" for the factor of a link."""
+    choice: Choice
+
+
+@dataclass(frozen=True, slots=True)
+class Term:
+    """What a constant of a jump is made of: a variable, times the factors of the links that lead to it."""
+
+    variable: int
+    """Place in Brief.variables."""
+    factors: tuple[int, ...] = ()
+    """Places in Brief.variables; the value is the variable times each of these, from left to right."""
+
+    @property
+    def places(self) -> tuple[int, ...]:
+        """Every variable that it depends on."""
+        return (self.variable, *self.factors)
+
+
+@dataclass(frozen=True, slots=True)
 class JumpBrief:
     """What is wanted of one jump."""
 
     name: str = ONLY_JUMP
     targets: tuple[Target, ...] = ()
     weight: float = 1.0
+    like: str | None = None
+    """The jump whose constants it takes where it names none itself; terms say the same exactly."""
+    terms: Mapping[str, Term] = field(default_factory=dict)
+    """What each of the brief's searched or fixed constants is made of, by name (SEARCHABLE, gravity_factor,
+    step_up, edge_allowance); empty in a brief without [jumps]."""
+    today: Constants | None = None
+    """What the build has now for this jump; None where the brief has no today."""
+    second: Second | None = None
+    base: Constants | None = None
+    """What its constants are where nothing else is said (Brief.base of its view)."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -117,6 +151,10 @@ class Ledge:
     """ "reach" or "stay-out"."""
     margin: float = 0.0
     by: tuple[str, ...] = (ONLY_JUMP,)
+    place: Mapping[str, str] = field(default_factory=dict)
+    """Where it is: the columns of a level list that are no feature's, as they stand there."""
+    source: str = ""
+    """The file and line of a level list's row, "roofs.csv, line 12"; empty for one of the brief itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -131,6 +169,49 @@ class Gap:
     """Height of the far side over the take-off."""
     margin: float = 0.0
     by: tuple[str, ...] = (ONLY_JUMP,)
+    place: Mapping[str, str] = field(default_factory=dict)
+    """Where it is: the columns of a level list that are no feature's, as they stand there."""
+    source: str = ""
+    """The file and line of a level list's row, "roofs.csv, line 12"; empty for one of the brief itself."""
+
+
+@dataclass(frozen=True, slots=True)
+class Block:
+    """Something high and long that must, or must not, be cleared in one jump."""
+
+    name: str
+    height: float
+    length: float
+    must: str
+    """ "clear" or "stay-out"."""
+    margin: float = 0.0
+    """Length that must be left over, or lacking."""
+    by: tuple[str, ...] = (ONLY_JUMP,)
+    place: Mapping[str, str] = field(default_factory=dict)
+    """Where it is: the columns of a level list that are no feature's, as they stand there."""
+    source: str = ""
+    """The file and line of a level list's row, "roofs.csv, line 12"; empty for one of the brief itself."""
+
+
+@dataclass(frozen=True, slots=True)
+class Ceiling:
+    """A height that the top of the body must stay under."""
+
+    name: str
+    height: float
+    body_height: float
+    """How far the top of the body is above what the apex measures."""
+    must: str = "stay-under"
+    margin: float = 0.0
+    by: tuple[str, ...] = (ONLY_JUMP,)
+    place: Mapping[str, str] = field(default_factory=dict)
+    """Where it is: the columns of a level list that are no feature's, as they stand there."""
+    source: str = ""
+    """The file and line of a level list's row, "roofs.csv, line 12"; empty for one of the brief itself."""
+
+
+Feature = Ledge | Gap | Block | Ceiling
+"""Whatever a level wants of jumps."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -139,6 +220,9 @@ class NamedSet:
 
     name: str
     constants: Constants
+    """Of several jumps the first one's."""
+    jumps: tuple[Constants, ...] = ()
+    """One a jump in file order; empty in a brief without [jumps]."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -164,14 +248,52 @@ class Brief:
     jumps: tuple[JumpBrief, ...] = (JumpBrief(),)
     ledges: tuple[Ledge, ...] = ()
     gaps: tuple[Gap, ...] = ()
+    blocks: tuple[Block, ...] = ()
+    ceilings: tuple[Ceiling, ...] = ()
     sets: tuple[NamedSet, ...] = ()
     lengths: Mapping[str, float] = field(default_factory=dict)
     """Named lengths of [units]: tile = 64."""
+    variables: tuple[Variable, ...] = ()
+    """What a search of several jumps chooses; empty in a brief without [jumps]."""
 
     @property
-    def features(self) -> tuple[Ledge | Gap, ...]:
-        """Every ledge, then every gap: the order of shortfalls and bands."""
-        return (*self.ledges, *self.gaps)
+    def several(self) -> bool:
+        """Whether the brief has [jumps]: then constants are sets, one of Constants a jump, in file order."""
+        return bool(self.variables) or len(self.jumps) > 1
+
+    def view(self, name: str) -> Brief:
+        """Return the brief of one of several jumps: its targets, features and today; everything else alike.
+
+        What applies to one jump (flight, measures, spares, bands, arcs) applies to a view.
+        """
+        if not self.several:
+            return self
+        jump = next(one for one in self.jumps if one.name == name)
+        search = None
+        if self.search is not None and jump.terms:
+            search = {
+                constant: self.variables[term.variable].choice
+                for constant, term in jump.terms.items()
+                if not term.factors
+            }
+        return replace(
+            self,
+            jumps=(jump,),
+            today=jump.today,
+            base=jump.base or jump.today or self.base,
+            search=search,
+            ledges=tuple(one for one in self.ledges if name in one.by),
+            gaps=tuple(one for one in self.gaps if name in one.by),
+            blocks=tuple(one for one in self.blocks if name in one.by),
+            ceilings=tuple(one for one in self.ceilings if name in one.by),
+            sets=(),
+            variables=(),
+        )
+
+    @property
+    def features(self) -> tuple[Feature, ...]:
+        """Every ledge, then every gap, block and ceiling: the order of shortfalls and bands."""
+        return (*self.ledges, *self.gaps, *self.blocks, *self.ceilings)
 
     def nominal(self, constants: Constants) -> Rate:
         """Return the rate at which aims are judged for these constants."""

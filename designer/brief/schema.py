@@ -3,104 +3,44 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from collections.abc import Mapping
 from difflib import get_close_matches
 from fractions import Fraction
-from typing import Annotated, Any, cast
+from typing import Annotated, Any
 
-from pydantic import BaseModel, ConfigDict, PlainValidator, ValidationError, ValidationInfo, create_model
+from pydantic import BaseModel, ConfigDict, ValidationError, create_model
 
-from designer.brief.choices import LIMITS, Reader
-from designer.brief.keys import LISTS, NOT_YET, as_target, one_of, unknown_key
+from designer.brief.choices import LIMITS, Link
+from designer.brief.fields import (
+    Aim,
+    Bound,
+    Context,
+    Flag,
+    Length,
+    LengthAbove,
+    Margin,
+    ModeName,
+    Names,
+    NotNegative,
+    Positive,
+    Text,
+    When,
+    Within,
+    choice,
+    constant,
+    frame_time_of,
+    own_choice,
+    read_text,
+    with_context,
+    word,
+)
+from designer.brief.keys import JUMP_CONSTANTS, LISTS, NOT_YET, as_target, home, owners, unknown_key
 from designer.brief.model import Choice, Loop, Rate
 from designer.brief.rates import read_rate, read_rates
-from designer.brief.units import Limits, Misread, Misreadings, Units, exact
-from designer.motion.measures import MEASURES
-from designer.motion.rule import SEARCHABLE, FrameTime, Integrator, LandingTest, Mode, Place
+from designer.brief.units import Misread, Misreadings, Units, exact
+from designer.motion.rule import OWN, SEARCHABLE, FrameTime, How, Integrator, LandingTest, Mode, Place
 
 Path = tuple[str | int, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Context:
-    """What validators must know beyond the value before them."""
-
-    reader: Reader
-    measure: str = ""
-    """The measure whose target is read; empty elsewhere."""
-
-
-def _with_context(read: Callable[[Any, Context], object]) -> PlainValidator:
-    def validate(value: object, info: ValidationInfo) -> object:
-        return read(value, cast(Context, info.context))
-
-    return PlainValidator(validate)
-
-
-def _quantity(limits: Limits) -> PlainValidator:
-    return _with_context(lambda value, context: float(limits.read(value, context.reader.units)))
-
-
-def _constant(name: str) -> PlainValidator:
-    return _with_context(lambda value, context: context.reader.constant(name, value))
-
-
-def _choice(name: str) -> PlainValidator:
-    return _with_context(lambda value, context: context.reader.choice(name, value))
-
-
-def _word(*words: str, later: tuple[str, ...] = ()) -> PlainValidator:
-    return PlainValidator(lambda value: one_of(value, words, later))
-
-
-def _text(value: object) -> str:
-    """Return a name or title: text of at most 200 signs on one line."""
-    allowed = "text in quotation marks, at most 200 signs on one line"
-    if not isinstance(value, str):
-        raise Misread(allowed, better=f'"{value}"' if isinstance(value, int | Fraction) else "", fix="")
-    if not value.strip():
-        raise Misread(allowed + ", not empty", fix="write a name")
-    if len(value) > 200 or any(not sign.isprintable() for sign in value):
-        raise Misread(allowed, fix="write a shorter text on one line, without control characters")
-    return value.strip()
-
-
-def _flag(value: object) -> bool:
-    """Return true or false."""
-    if isinstance(value, bool):
-        return value
-    spelled = str(value).strip().lower()
-    better = {"yes": "true", "on": "true", "1": "true", "true": "true"}.get(spelled, "")
-    better = better or {"no": "false", "off": "false", "0": "false", "false": "false"}.get(spelled, "")
-    raise Misread(
-        "true or false, without quotation marks", better=better, fix="" if better else "write one of them"
-    )
-
-
-def _measured(value: object, context: Context) -> float:
-    """Return an aim or a bound in the unit of the target's measure."""
-    return float(Limits(MEASURES[context.measure], 0).read(value, context.reader.units))
-
-
-def _aim(value: object, context: Context) -> float:
-    return float(Limits(MEASURES[context.measure], 0, beyond=True).read(value, context.reader.units))
-
-
-def _frame_time(context: Context) -> FrameTime:
-    return context.reader.frame_time
-
-
-Text = Annotated[str, PlainValidator(_text)]
-Flag = Annotated[bool, PlainValidator(_flag)]
-Positive = Annotated[float, _quantity(Limits("number", 0, beyond=True))]
-NotNegative = Annotated[float, _quantity(Limits("number", 0))]
-Length = Annotated[float, _quantity(Limits("length"))]
-LengthAbove = Annotated[float, _quantity(Limits("length", 0, beyond=True))]
-Margin = Annotated[float, _quantity(Limits("length", 0))]
-ModeName = Annotated[str, _word(*Mode, later=("random",))]
-Within = Annotated[float, _with_context(_aim)]
-Bound = Annotated[float | None, _with_context(_measured)]
 
 
 class Table(BaseModel):
@@ -112,15 +52,15 @@ class Table(BaseModel):
 class LoopTable(Table):
     """[loop]."""
 
-    steps: Annotated[str, _word(*Loop)]
-    aim_at: Annotated[Rate | None, _with_context(lambda v, c: read_rate(v, _frame_time(c)))] = None
+    steps: Annotated[str, word(*Loop)]
+    aim_at: Annotated[Rate | None, with_context(lambda v, c: read_rate(v, frame_time_of(c)))] = None
 
 
 class RoundingTable(Table):
     """rounding = { … } of [rule]."""
 
     mode: ModeName = Mode.NEAREST_EVEN.value
-    at: Annotated[str, _word(*Place)] = Place.END.value
+    at: Annotated[str, word(*Place)] = Place.END.value
     carry: Flag = False
 
 
@@ -134,10 +74,10 @@ class PositionTable(Table):
 class RuleTable(Table):
     """[rule]."""
 
-    integrator: Annotated[str, _word(*Integrator, later=("half-kick", "constant-acceleration"))]
+    integrator: Annotated[str, word(*Integrator, later=("half-kick", "constant-acceleration"))]
     rounding: RoundingTable = RoundingTable()
-    frame_time: Annotated[str, _word(*FrameTime)] = FrameTime.EXACT.value
-    landing_test: Annotated[str, _word(*LandingTest)] = LandingTest.SWEPT.value
+    frame_time: Annotated[str, word(*FrameTime)] = FrameTime.EXACT.value
+    landing_test: Annotated[str, word(*LandingTest)] = LandingTest.SWEPT.value
     launch_gravity: Flag = True
     contact_tolerance: Margin | None = None
     position: PositionTable = PositionTable()
@@ -146,7 +86,7 @@ class RuleTable(Table):
 class TargetTable(Table):
     """One target of [targets]."""
 
-    aim: Annotated[float | None, _with_context(_aim)] = None
+    aim: Aim = None
     at_least: Bound = None
     at_most: Bound = None
     within: Within
@@ -157,42 +97,86 @@ class RatesTable(Table):
     """[rates]."""
 
     supported: Annotated[
-        tuple[Rate, ...], _with_context(lambda v, c: read_rates(v, _frame_time(c), supported=True))
+        tuple[Rate, ...], with_context(lambda v, c: read_rates(v, frame_time_of(c), supported=True))
     ] = ()
     watched: Annotated[
-        tuple[Rate, ...], _with_context(lambda v, c: read_rates(v, _frame_time(c), supported=False))
+        tuple[Rate, ...], with_context(lambda v, c: read_rates(v, frame_time_of(c), supported=False))
     ] = ()
     spread_weight: NotNegative = 1.0
 
 
-class LedgeTable(Table):
+class FeatureTable(Table):
+    """What all features of a level share."""
+
+    name: Text
+    margin: Margin = 0.0
+    by: Names = ()
+
+
+class LedgeTable(FeatureTable):
     """One of [[ledges]]."""
 
-    name: Text
     height: LengthAbove
-    must: Annotated[str, _word("reach", "stay-out")]
-    margin: Margin = 0.0
+    must: Annotated[str, word("reach", "stay-out")]
 
 
-class GapTable(Table):
+class GapTable(FeatureTable):
     """One of [[gaps]]."""
 
-    name: Text
     width: LengthAbove
-    must: Annotated[str, _word("cross", "stay-out")]
+    must: Annotated[str, word("cross", "stay-out")]
     far_level: Length = 0.0
-    margin: Margin = 0.0
+
+
+class BlockTable(FeatureTable):
+    """One of [[blocks]]."""
+
+    height: LengthAbove
+    length: LengthAbove
+    must: Annotated[str, word("clear", "stay-out")]
+
+
+class CeilingTable(FeatureTable):
+    """One of [[ceilings]]."""
+
+    height: LengthAbove
+    body_height: Margin
+    must: Annotated[str, word("stay-under")] = "stay-under"
+
+
+class SecondTable(Table):
+    """second = { … } of a jump."""
+
+    launch_speed: Annotated[float, constant("launch_speed")]
+    when: When = None
+    how: Annotated[str, word(*How)] = How.SET.value
+
+
+class JumpTable(Table):
+    """One of [jumps.NAME], but for its search, its today, its targets and its second."""
+
+    weight: Positive = 1.0
+    like: Text | None = None
 
 
 _CONSTANTS: dict[str, Any] = {
-    name: (Annotated[float | None, _constant(name)], None) for name in ("step", *LIMITS)
+    name: (Annotated[float | None, constant(name)], None) for name in ("step", *LIMITS)
 }
-_CHOICES: dict[str, Any] = {name: (Annotated[Choice | None, _choice(name)], None) for name in SEARCHABLE} | {
-    name: _CONSTANTS[name] for name in ("step_up", "edge_allowance")
+_CHOICES: dict[str, Any] = {name: (Annotated[Choice | None, choice(name)], None) for name in SEARCHABLE} | {
+    "gravity_factor": (Annotated[Choice | None, choice("gravity_factor")], None),
+    "step_up": _CONSTANTS["step_up"],
+    "edge_allowance": _CONSTANTS["edge_allowance"],
 }
 TodayTable = create_model("TodayTable", __base__=Table, **_CONSTANTS)
 SetTable = create_model("SetTable", __base__=Table, name=(Text, ...), **_CONSTANTS)
 SearchTable = create_model("SearchTable", __base__=Table, **_CHOICES)
+
+_OWN: dict[str, Any] = {name: _CONSTANTS[name] for name in JUMP_CONSTANTS}
+_OWN_CHOICES: dict[str, Any] = {
+    name: (Annotated[Choice | Link | None, own_choice(name)], None) for name in OWN
+} | {name: _CONSTANTS[name] for name in ("step_up", "edge_allowance")}
+JumpTodayTable = create_model("JumpTodayTable", __base__=Table, **_OWN)
+JumpSearchTable = create_model("JumpSearchTable", __base__=Table, **_OWN_CHOICES)
 
 MODELS: Mapping[str, type[Table]] = {
     "loop": LoopTable,
@@ -202,7 +186,14 @@ MODELS: Mapping[str, type[Table]] = {
     "rates": RatesTable,
     "ledges": LedgeTable,
     "gaps": GapTable,
+    "blocks": BlockTable,
+    "ceilings": CeilingTable,
     "sets": SetTable,
+    "sets.*": JumpTodayTable,
+    "jumps.*": JumpTable,
+    "jumps.*.today": JumpTodayTable,
+    "jumps.*.search": JumpSearchTable,
+    "jumps.*.second": SecondTable,
 }
 
 REQUIRED = {
@@ -216,6 +207,18 @@ REQUIRED = {
     ("gaps", "must"): ('"cross" or "stay-out"', 'add must = "cross" or must = "stay-out"'),
     ("ledges", "height"): ("a length above 0", "add height = …"),
     ("gaps", "width"): ("a length above 0", "add width = …"),
+    ("blocks", "must"): ('"clear" or "stay-out"', 'add must = "clear" or must = "stay-out"'),
+    ("blocks", "height"): ("a length above 0", "add height = …"),
+    ("blocks", "length"): ("a length above 0", "add length = …"),
+    ("ceilings", "height"): ("a length above 0", "add height = …"),
+    ("ceilings", "body_height"): (
+        "how far the top of the body is above what the apex measures, 0 or more",
+        "add body_height = …",
+    ),
+    ("jumps.*.second", "launch_speed"): (
+        "the launch speed of the second jump, above 0; it has no default",
+        'add it, as in second = { launch_speed = 520, when = "apex" }',
+    ),
 }
 """What to say where a key is missing that has no default."""
 
@@ -246,6 +249,12 @@ def wrong_shape(section: str, raw: object) -> Misread:
         return Misread(
             allowed, fix=f"write [[{section}]] instead of [{section}{'.' + names[0] if names else ''}]{below}"
         )
+    if section == "jumps.*":
+        words = "a table: [jumps.NAME] alone on a line, the jump's search, targets … below it"
+        return Misread(words, fix="give each jump a header of its own, as in [jumps.walk]")
+    if "*" in section:
+        key = section.rpartition(".")[2].replace("*", "walk")
+        return Misread(f"a table in braces, {home(section)}", fix=f"write {key} = {{ launch_speed = … }}")
     single = "; in single square brackets" if isinstance(raw, list) else ""
     allowed = f"a table: [{section}] alone on a line, its keys below it{single}"
     return Misread(allowed, fix=f"write [{section}]")
@@ -297,7 +306,7 @@ def read_units(raw: object) -> tuple[Units, list[tuple[Path, Misread]]]:
     for key, value in raw.items():
         try:
             if key == "length":
-                length = _text(value)
+                length = read_text(value)
             elif key == "time":
                 _time_unit(value)
             else:
@@ -318,9 +327,9 @@ def _time_unit(value: object) -> None:
 
 
 def _named_length(key: str, value: object) -> Fraction:
-    belongs = unknown_key("units", key)
-    if " belongs " in belongs.fix:
-        raise Misread("in [units]: length, time and names of lengths", fix=belongs.fix)
+    if owners(key):
+        words = "in [units]: length, time and names of lengths"
+        raise Misread(words, fix=f"{key} belongs {owners(key)}")
     allowed = "a named length: a number above 0 in the length unit, as in tile = 64"
     if re.fullmatch(r"[^\W\d][\w-]*", key) is None or key in ("s", "ms", "Hz", "none"):
         raise Misread(f"{allowed}; its name is a word that is no unit of time", fix="choose another name")

@@ -133,6 +133,12 @@ def _numbers(apex: float, airtime: float) -> dict[str, str]:
         "landing_speed": _tidy(launch_speed * 1.1),
         "landing_within": _tidy(launch_speed * 0.02, 1),
         "heavier": _tidy(gravity * 1.2),
+        "block_height": _tidy(apex * 0.4),
+        "block_length": _tidy(gap * 0.4),
+        "ceiling": _tidy(apex * 3),
+        "body": _tidy(apex * 1.5),
+        "faster": _tidy(run_speed * 1.5),
+        "second": _tidy(launch_speed * 0.8),
     }
     texts = {name: _text(value) for name, value in values.items()}
     return texts | {"gravity_range": _range(gravity), "launch_speed_range": _range(launch_speed)}
@@ -158,6 +164,12 @@ _FULL = """\
 # Lines that begin with # are comments. Take out what your game has no use for.
 
 title = "A jump, with everything that a brief can say"
+# with   = "studio.toml"      # what a team shares: read first; this file's keys win, lists of tables join
+# levels = "roofs.csv"        # a level list, whose rows count as ledges and gaps; the first names columns:
+#   name,must,height,width,far_level,margin,by,room
+#   crate,reach,{reach},,,{margin},,yard
+#   ditch,cross,,{width},0,{margin},walk;run,yard
+#   must: reach, cross or stay-out; a height or a width; by: jumps with ; between; others are kept and shown
 
 [units]
 {length_line}# the unit of every plain number that is a length; speeds are per second
@@ -230,8 +242,47 @@ far_level = 0                 # height of the far side over the take-off
 must      = "cross"           # or "stay-out"
 margin    = {margin}
 
+[[blocks]]                    # what is high and long: the jump must be above its height for its length
+name   = "barrel"
+height = {block_height}
+length = {block_length}
+must   = "clear"              # or "stay-out"
+margin = {margin}
+
+[[ceilings]]                  # what the top of the body must stay under
+name   = "beam"
+height = {ceiling}
+body_height = {body}          # how far the top of the body is above what the apex measures
+must   = "stay-under"
+margin = {margin}
+
 [[sets]]                      # sets that people bring along; what is not named is today's
 name         = "heavier"
 gravity      = {heavier}
 launch_speed = {launch_speed}
+
+# Several jumps of one game share gravity, step and grain. Then [targets] moves into them, and ledges, gaps
+# and blocks say which jumps must: by = ["walk"]. Each jump names what is its own; the rest is [search]'s.
+#
+# [jumps.walk]
+# search  = {{ launch_speed = {launch_speed_range} }}
+# targets = {{ apex = {{ aim = {apex}, within = {apex_within} }} }}
+# today   = {{ launch_speed = {launch_speed} }}     # what the build has now for this jump
+#
+# [jumps.run]
+# like    = "walk"            # each constant that is not named here is walk's, whatever it becomes
+# search  = {{ run_speed = {faster} }}
+# targets = {{ max_gap = {{ at_least = {gap_bound}, within = {gap_within} }} }}
+# weight  = 0.5               # of its targets beside those of other jumps; 1 where not said
+#
+# [jumps.armour]
+# like    = "walk"
+# search  = {{ launch_speed = {{ of = "walk", times = {{ among = [0.85, 0.9] }} }}, gravity_factor = 0.9 }}
+#           a link: walk's launch speed times a factor (without times: the same); times = 0.85 too, or a range
+#
+# [jumps.double]
+# like    = "walk"
+# second  = {{ launch_speed = {second}, when = "apex", how = "set" }}   # in the air; "0.3 s" | how = "add"
+#
+# A set then says what is one jump's in braces: walk = {{ launch_speed = {launch_speed} }}
 """

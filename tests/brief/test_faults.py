@@ -74,7 +74,7 @@ FAULTS = {
     "a strange key in a range": (changed(("every = 10", "step = 10")), "step = 10", "search.gravity.step",
                                  "take step out"),
     "another jump's constant": (changed((GRAVITY, '{ of = "walk", from = 1, to = 2 }')), '"walk"',
-                                "search.gravity.of", "not yet known"),
+                                "search.gravity.of", "only in the search of a jump"),
     "a bare list": (changed((GRAINS, "[0, 0.125, 1]")), "grain = [", "search.grain",
                     "write grain = { among = [0, 0.125, 1] }"),
     "an empty list": (changed((GRAINS, "{ among = [] }")), "among", "search.grain.among",
@@ -190,9 +190,6 @@ FAULTS = {
 }  # fmt: skip
 
 LATER = {
-    "[jumps]": (BASE + "[jumps.walk]\nlike = 1\n", "[jumps.walk]", "jumps"),
-    "with": ('with = "studio.toml"\n' + BASE, "with", "with"),
-    "levels": ('levels = "roofs.csv"\n' + BASE, "levels", "levels"),
     "[keep]": (BASE + "[keep]\napex = { within = 1 }\n", "[keep]", "keep"),
     "[windows]": (BASE + '[windows]\ngrace = "100 ms"\n', "[windows]", "windows"),
     "[human]": (BASE + "[human]\npress_error = 0.02\n", "[human]", "human"),
@@ -206,9 +203,6 @@ LATER = {
                     "rule.hold_factor"),
     "number": (changed(("launch_gravity =", 'number = "float32"\nlaunch_gravity =')), "float32",
                "rule.number"),
-    "gravity_factor": (changed(("grain = 1", "gravity_factor = 1")), "gravity_factor",
-                       "today.gravity_factor"),
-    "by": (changed(("margin = 2", 'by = ["jump"]')), "by =", "ledges[1].by"),
     "clearance": (changed(("max_gap =", "clearance =")), "clearance", "targets.clearance"),
 }  # fmt: skip
 

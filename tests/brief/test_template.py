@@ -8,7 +8,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from designer.brief.keys import KNOWN
-from designer.brief.reading import parse_brief
+from designer.brief.reading import parse_brief, read_brief
 from designer.brief.template import new_brief, save_brief
 from designer.errors import InputError
 from designer.objective.judge import judge
@@ -54,12 +54,40 @@ def test_constants_follow_from_the_continuous_formulas() -> None:
 def test_the_full_form_names_everything() -> None:
     text = new_brief(full=True)
     for section, keys in KNOWN.items():
-        if section in ("sets", "targets.*", "search"):
+        if section in ("sets", "sets.*", "targets.*", "search"):
             continue
         for key in keys:
             assert re.search(rf"\b{key}\b", text), f"{section}.{key}"
     for word in ("aim", "at_least", "within", "weight", '"free"', "among", "every", "stay-out", "cross"):
         assert word in text
+
+
+def test_the_jumps_of_the_full_form_are_in_order() -> None:
+    text = new_brief(full=True)
+    head, _, tail = text.partition("# [jumps.walk]")
+    jumps = ("# [jumps.walk]" + tail).split("# A set then")[0]
+    written = "\n".join(re.findall(r"(?m)^# (\[.*|\w+ += .*)$", jumps))
+    before, _, rest = head.partition("[targets]")
+    rest = "[rates]" + rest.partition("[rates]")[2]
+    for must in ("reach", "cross", "clear"):
+        rest = re.sub(rf'(must +?= "{must}")', r'\1\nby = ["walk"]', rest)
+    brief = parse_brief(before + rest + written, "new.toml")
+    assert [jump.name for jump in brief.jumps] == ["walk", "run", "armour", "double"]
+    assert brief.jumps[3].second is not None
+    assert brief.jumps[1].weight == 0.5
+
+
+def test_the_level_list_of_the_full_form_is_in_order(tmp_path: Path) -> None:
+    text = new_brief(full=True)
+    rows = re.findall(r"(?m)^#   ([\w-]+,.*,.*,.*)$", text)
+    assert len(rows) == 3
+    (tmp_path / "roofs.csv").write_text("\n".join(rows).replace("walk;run", ""))
+    (tmp_path / "new.toml").write_text('levels = "roofs.csv"\n' + text)
+    brief = read_brief(tmp_path / "new.toml")
+    assert [(one.name, dict(one.place)) for one in brief.features if one.source] == [
+        ("crate", {"room": "yard"}),
+        ("ditch", {"room": "yard"}),
+    ]
 
 
 @settings(max_examples=60, deadline=None)
