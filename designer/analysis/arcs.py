@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, TypeVar
 
 import numpy as np
 
@@ -12,6 +12,7 @@ from designer.brief.model import Brief, Rate
 from designer.motion.jumps import Status
 from designer.motion.rule import Constants
 from designer.motion.simulate import trace
+from designer.objective.table import as_flown
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -20,6 +21,8 @@ if TYPE_CHECKING:
 
 LEDGE_SHARE = 0.16
 """How wide a ledge is drawn, as a share of the width of the scene."""
+Wide = TypeVar("Wide", "LedgeShape", "CeilingShape")
+
 STUCK_STEPS = 200
 """How many steps are drawn of a jump that never lands."""
 
@@ -63,6 +66,32 @@ class GapShape:
 
 
 @dataclass(frozen=True, slots=True)
+class BlockShape:
+    """A block as it is drawn: as high and long as it is, around the apex."""
+
+    name: str
+    must: str
+    height: float
+    length: float
+    x_from: float
+    x_to: float
+
+
+@dataclass(frozen=True, slots=True)
+class CeilingShape:
+    """A ceiling as it is drawn: where the arc of the feet must stay under, from x_from to x_to."""
+
+    name: str
+    must: str
+    height: float
+    """Of the ceiling itself."""
+    feet: float
+    """The height less the body's: what the arc must stay under."""
+    x_from: float
+    x_to: float
+
+
+@dataclass(frozen=True, slots=True)
 class Scene:
     """The arcs of one set of constants and the features around them, to scale where x is a distance."""
 
@@ -74,11 +103,66 @@ class Scene:
     ledges: tuple[LedgeShape, ...]
     gaps: tuple[GapShape, ...]
     """Empty where x is time."""
+    blocks: tuple[BlockShape, ...] = ()
+    """Empty where x is time."""
+    ceilings: tuple[CeilingShape, ...] = ()
 
 
-def arcs(brief: Brief, constants: Constants) -> Scene:
-    """Trace constants at the nominal rate and at each supported one, down to the lowest far side of a gap."""
-    by_distance = constants.run_speed > 0.0
+@dataclass(frozen=True, slots=True)
+class Course:
+    """The arcs of every jump of one set, and the features around them."""
+
+    paths: tuple[tuple[Arc, ...], ...]
+    """Of each jump in the order of the brief, the nominal arc first."""
+    scene: Scene
+    """The features, without arcs of its own."""
+
+
+def course(brief: Brief, sets: Sequence[Constants]) -> Course:
+    """Trace every jump of a set; x is a distance only where every jump runs.
+
+    A feature stands around the apexes of the jumps that it binds.
+    """
+    by_distance = all(one.run_speed > 0.0 for one in sets)
+    views = [brief.view(jump.name) for jump in brief.jumps]
+    scenes = [arcs(view, one, by_distance) for view, one in zip(views, sets, strict=True)]
+    gaps = brief.gaps if by_distance else ()
+    every = Scene(
+        arcs=(),
+        by_distance=by_distance,
+        edge_allowance=0.0,
+        ledges=_over_all([one for scene in scenes for one in scene.ledges]),
+        gaps=tuple(GapShape(gap.name, gap.must, gap.width, gap.far_level, gap.margin) for gap in gaps),
+        blocks=_first_of([one for scene in scenes for one in scene.blocks]),
+        ceilings=_over_all([one for scene in scenes for one in scene.ceilings]),
+    )
+    return Course(tuple(scene.arcs for scene in scenes), every)
+
+
+def _over_all(shapes: Sequence[Wide]) -> tuple[Wide, ...]:
+    """Return each shape once, as wide as all of its kind, name and height together."""
+    found: dict[tuple[object, ...], Wide] = {}
+    for one in shapes:
+        key = (one.name, one.must, one.height)
+        old = found.get(key, one)
+        found[key] = replace(one, x_from=min(one.x_from, old.x_from), x_to=max(one.x_to, old.x_to))
+    return tuple(found.values())
+
+
+def _first_of(blocks: Sequence[BlockShape]) -> tuple[BlockShape, ...]:
+    """Return each block once, where the first jump that it binds meets it."""
+    found: dict[tuple[object, ...], BlockShape] = {}
+    for one in blocks:
+        found.setdefault((one.name, one.must, one.height, one.length), one)
+    return tuple(found.values())
+
+
+def arcs(brief: Brief, constants: Constants, by_distance: bool | None = None) -> Scene:
+    """Trace constants at the nominal rate and at each supported one, down to the lowest far side of a gap.
+
+    The brief has one jump, or is the view of one. by_distance: whether x is a distance; None: if it runs.
+    """
+    by_distance = constants.run_speed > 0.0 if by_distance is None else by_distance
     pace = constants.run_speed if by_distance else 1.0
     lowest = min([0.0, *(gap.far_level for gap in brief.gaps if by_distance)])
     paths = tuple(_arc(brief, constants, rate, pace, lowest) for rate in _rates(brief, constants))
@@ -89,6 +173,8 @@ def arcs(brief: Brief, constants: Constants) -> Scene:
         edge_allowance=constants.edge_allowance if by_distance else 0.0,
         ledges=_ledges(brief, paths),
         gaps=tuple(GapShape(gap.name, gap.must, gap.width, gap.far_level, gap.margin) for gap in gaps),
+        blocks=_blocks(brief, paths) if by_distance else (),
+        ceilings=_ceilings(brief, paths),
     )
 
 
@@ -105,10 +191,11 @@ def _rates(brief: Brief, constants: Constants) -> Iterator[tuple[Rate, bool]]:
 def _arc(brief: Brief, constants: Constants, rate: tuple[Rate, bool], pace: float, lowest: float) -> Arc:
     """Trace one rate and cut the last segment where it meets the lowest level."""
     which, nominal = rate
-    flight = trace(brief.rule, constants, which.step)
+    second, constants = brief.jumps[0].second, as_flown(constants)
+    flight = trace(brief.rule, constants, which.step, second=second)
     lands = flight.status is Status.LANDS
     if lands and lowest < 0.0:
-        flight = trace(brief.rule, constants, which.step, lowest)
+        flight = trace(brief.rule, constants, which.step, lowest, second=second)
     t, y = np.asarray(flight.t, dtype=np.float64), np.asarray(flight.y, dtype=np.float64)
     if not lands:
         t, y = t[: STUCK_STEPS + 1], y[: STUCK_STEPS + 1]
@@ -121,11 +208,36 @@ def _arc(brief: Brief, constants: Constants, rate: tuple[Rate, bool], pace: floa
 
 def _ledges(brief: Brief, paths: tuple[Arc, ...]) -> tuple[LedgeShape, ...]:
     """Stand ledges around the apex of the nominal arc, so that one sees which the arcs clear."""
-    landing = [arc for arc in paths if arc.lands] or list(paths)
-    width = max(float(arc.x[-1]) for arc in landing)
-    middle = float(landing[0].x[int(np.argmax(landing[0].y))])
-    half = 0.5 * LEDGE_SHARE * width
+    middle, half = _around_apex(paths)
     return tuple(
         LedgeShape(ledge.name, ledge.must, ledge.height, ledge.margin, middle - half, middle + half)
         for ledge in brief.ledges
+    )
+
+
+def _around_apex(paths: tuple[Arc, ...]) -> tuple[float, float]:
+    """Return where the apex of the nominal arc is, and half of how wide a ledge there is drawn."""
+    landing = [arc for arc in paths if arc.lands] or list(paths)
+    width = max(float(arc.x[-1]) for arc in landing)
+    return float(landing[0].x[int(np.argmax(landing[0].y))]), 0.5 * LEDGE_SHARE * width
+
+
+def _blocks(brief: Brief, paths: tuple[Arc, ...]) -> tuple[BlockShape, ...]:
+    """Stand blocks around the apex: there the most is cleared."""
+    middle, _ = _around_apex(paths)
+    return tuple(
+        BlockShape(
+            one.name, one.must, one.height, one.length, middle - 0.5 * one.length, middle + 0.5 * one.length
+        )
+        for one in brief.blocks
+    )
+
+
+def _ceilings(brief: Brief, paths: tuple[Arc, ...]) -> tuple[CeilingShape, ...]:
+    middle, half = _around_apex(paths)
+    return tuple(
+        CeilingShape(
+            one.name, one.must, one.height, one.height - one.body_height, middle - half, middle + half
+        )
+        for one in brief.ceilings
     )

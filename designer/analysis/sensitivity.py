@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -35,6 +35,7 @@ class Nudge:
     """One constant moved by one increment, everything else kept."""
 
     constant: str
+    """A constant; with several jumps a variable of the brief, such as "walk.launch_speed"."""
     direction: int
     """+1 or −1."""
     before: float
@@ -68,35 +69,116 @@ class Sensitivity:
     nudges: tuple[Nudge, ...]
 
 
-def one_increment(brief: Brief, constants: Constants, base: Verdict | None = None) -> Sensitivity:
+def one_increment(
+    brief: Brief, constants: Constants | Sequence[Constants], base: Verdict | None = None
+) -> Sensitivity:
     """Move each constant that the search may change by one increment, up and down, and judge again.
 
     Where the brief searches nothing, each constant that is not 0 is moved by 1 %. Steps that cross a flip
-    are named with the rates at which they do, and stand as they are: never averaged with the others.
+    are named with the rates at which they do, and stand as they are: never averaged with the others. Of
+    several jumps the variables of the brief are moved (see `each_variable`).
     """
     base = judge(brief, constants, bands=False) if base is None else base
+    if brief.several:
+        return each_variable(brief, base)
+    constants = base.constants
     nudges = []
     for name in SEARCHABLE:
         for direction, before, after, share in _neighbours(brief, constants, name):
             value = None if np.isinf(after) else after
             moved = replace(constants, **{name: value})  # type: ignore[arg-type]
             verdict = judge(brief, moved, bands=False)
-            nudges.append(
-                Nudge(
-                    constant=name,
-                    direction=direction,
-                    before=before,
-                    after=after,
-                    share=share,
-                    changes=_changes(base, verdict),
-                    miss=_difference(base.miss, verdict.miss),
-                    rate_spread=_difference(base.rate_spread, verdict.rate_spread),
-                    spares=_spares(base, verdict),
-                    flips=_flips(brief, constants, moved),
-                    lands=verdict.violation is not None,
-                )
-            )
+            what = (name, direction, before, after, share)
+            nudges.append(_nudge(what, base, verdict, _flips(brief, constants, moved)))
     return Sensitivity(base, tuple(nudges))
+
+
+def _nudge(
+    what: tuple[str, int, float, float, bool], base: Verdict, verdict: Verdict, flips: tuple[str, ...]
+) -> Nudge:
+    """Return what became of a set; what is name, direction, value before and after, whether by a share."""
+    return Nudge(
+        *what,
+        changes=_changes(base, verdict),
+        miss=_difference(base.miss, verdict.miss),
+        rate_spread=_difference(base.rate_spread, verdict.rate_spread),
+        spares=_spares(base, verdict),
+        flips=flips,
+        lands=verdict.violation is not None,
+    )
+
+
+def each_variable(brief: Brief, base: Verdict) -> Sensitivity:
+    """Move each variable of a brief with several jumps by one increment, up and down, and judge again.
+
+    Constants that are made of a variable move together (like, and links); the others stay. As in
+    `one_increment`, every variable is moved by 1 % where the brief searches nothing.
+    """
+    nudges = []
+    free = any(not variable.choice.is_fixed for variable in brief.variables)
+    for place, variable in enumerate(brief.variables):
+        held = variable_value(brief, base.sets, place)
+        if held is None:
+            continue
+        for direction, after, share in _steps(variable.choice, held, searched=free):
+            moved = moved_sets(brief, base.sets, place, after)
+            flips: dict[str, None] = {}
+            for jump, one, other in zip(brief.jumps, base.sets, moved, strict=True):
+                flips |= dict.fromkeys(_flips(brief.view(jump.name), one, other))
+            verdict = judge(brief, moved, bands=False)
+            what = (variable.name, direction, held, after, share)
+            nudges.append(_nudge(what, base, verdict, tuple(flips)))
+    return Sensitivity(base, tuple(nudges))
+
+
+def variable_value(brief: Brief, sets: Sequence[Constants], place: int) -> float | None:
+    """Return what a variable is in a set; None where no constant of it tells. Infinity: no terminal speed."""
+    for jump, constants in zip(brief.jumps, sets, strict=True):
+        for name, term in jump.terms.items():
+            if term.variable == place and not term.factors:
+                value: float | None = getattr(constants, name)
+                none = float("inf") if name == "terminal_speed" else None
+                return none if value is None else value
+    for jump, constants in zip(brief.jumps, sets, strict=True):
+        for name, term in jump.terms.items():
+            if term.factors[-1:] != (place,):
+                continue
+            before = _product(brief, sets, (term.variable, *term.factors[:-1]))
+            value = getattr(constants, name)
+            if not before or value is None:
+                continue
+            points = brief.variables[place].choice.values
+            ratio = float(value) / before
+            return ratio if points is None else min(points, key=lambda point: abs(point - ratio))
+    return None
+
+
+def _product(brief: Brief, sets: Sequence[Constants], places: Sequence[int]) -> float | None:
+    """Return the product of variables as they are in a set; None where one is not known."""
+    product: float | None = None
+    for place in places:
+        value = variable_value(brief, sets, place)
+        if value is None:
+            return None
+        product = value if product is None else product * value
+    return product
+
+
+def moved_sets(brief: Brief, sets: Sequence[Constants], place: int, after: float) -> tuple[Constants, ...]:
+    """Return a set in which one variable has another value, and every constant that is made of it."""
+    moved = []
+    for jump, constants in zip(brief.jumps, sets, strict=True):
+        changes: dict[str, float | None] = {}
+        for name, term in jump.terms.items():
+            if place not in term.places:
+                continue
+            value: float | None = None
+            for one in term.places:
+                factor = after if one == place else variable_value(brief, sets, one)
+                value = factor if value is None or factor is None else value * factor
+            changes[name] = None if value is not None and np.isinf(value) else value
+        moved.append(replace(constants, **changes))  # type: ignore[arg-type]
+    return tuple(moved)
 
 
 def _neighbours(brief: Brief, constants: Constants, name: str) -> Iterator[tuple[int, float, float, bool]]:
@@ -108,17 +190,22 @@ def _neighbours(brief: Brief, constants: Constants, name: str) -> Iterator[tuple
         return
     search = brief.search or {}
     searched = any(not choice.is_fixed for choice in search.values())
-    choice = search.get(name)
+    for direction, after, share in _steps(search.get(name), held, searched=searched):
+        yield direction, held, after, share
+
+
+def _steps(choice: Choice | None, held: float, *, searched: bool) -> Iterator[tuple[int, float, bool]]:
+    """Yield direction, neighbouring value and whether it is 1 % away."""
     if choice is not None and choice.values is not None and not choice.is_fixed:
         up = bisect_right(choice.values, held)
         down = bisect_left(choice.values, held) - 1
         if up < len(choice.values):
-            yield 1, held, choice.values[up], False
+            yield 1, choice.values[up], False
         if down >= 0:
-            yield -1, held, choice.values[down], False
+            yield -1, choice.values[down], False
     elif (_without_points(choice) or not searched) and held != 0.0 and np.isfinite(held):
-        yield 1, held, held * (1.0 + WITHOUT_INCREMENT), True
-        yield -1, held, held * (1.0 - WITHOUT_INCREMENT), True
+        yield 1, held * (1.0 + WITHOUT_INCREMENT), True
+        yield -1, held * (1.0 - WITHOUT_INCREMENT), True
 
 
 def _without_points(choice: Choice | None) -> bool:
@@ -145,6 +232,8 @@ def _spares(base: Verdict, moved: Verdict) -> dict[str, float | None]:
     """Return the change of each feature's spare."""
     pairs = [("ledge", a, b) for a, b in zip(base.ledges, moved.ledges, strict=True)]
     pairs += [("gap", a, b) for a, b in zip(base.gaps, moved.gaps, strict=True)]
+    pairs += [("block", a, b) for a, b in zip(base.blocks, moved.blocks, strict=True)]
+    pairs += [("ceiling", a, b) for a, b in zip(base.ceilings, moved.ceilings, strict=True)]
     return {f"{kind} {a.name}": _difference(a.spare, b.spare) for kind, a, b in pairs}
 
 
@@ -172,7 +261,7 @@ def _effective(brief: Brief, constants: Constants, step: float) -> tuple[float, 
     """Return the effective gravity of rising and of falling, length/s²; empty where nothing is rounded."""
     if constants.grain == 0.0 or brief.rule.rounding.carry:
         return ()
-    rise, fall = constants.gravity, constants.gravity * constants.fall_factor
+    rise, fall = constants.pull, constants.pull * constants.fall_factor
     both = (
         effective_gravity_per_step(brief.rule, rise, constants.grain, step),
         effective_gravity_per_step(brief.rule, fall, constants.grain, step, falling=True),

@@ -61,7 +61,10 @@ class RateReach:
 def reach_by_rate(
     brief: Brief, constants: Constants, low_hz: int = LOW_HZ, high_hz: int = HIGH_HZ
 ) -> RateReach:
-    """Measure constants at each whole rate from low_hz to high_hz; equal steps are flown once."""
+    """Measure constants at each whole rate from low_hz to high_hz; equal steps are flown once.
+
+    The brief has one jump, or is the view of one.
+    """
     if not 1 <= low_hz <= high_hz:
         raise ValueError(f"rates must be 1 ≤ low ≤ high, in Hz; got {low_hz} and {high_hz}")
     rule = brief.rule
@@ -69,7 +72,8 @@ def reach_by_rate(
     step = np.array([step_of_hz(int(hz), rule.frame_time) for hz in rate], dtype=np.float64)
     distinct, where = np.unique(step, return_inverse=True)
     launches = _launches(constants, distinct)
-    flown = fly_many(rule, launches)
+    second = brief.jumps[0].second
+    flown = fly_many(rule, launches, second=second)
     airtime = of_flight("airtime", rule, launches, flown)
     apex = of_flight("apex", rule, launches, flown)[where]
     levels = sorted({0.0, *(gap.far_level for gap in brief.gaps)})
@@ -87,7 +91,7 @@ def reach_by_rate(
 def _launches(constants: Constants, steps: Floats) -> Launches:
     """Return one launch a step, arrays (steps,)."""
     terminal = np.inf if constants.terminal_speed is None else constants.terminal_speed
-    values = (constants.gravity, constants.launch_speed)
+    values = (constants.pull, constants.launch_speed)
     rest = (constants.grain, constants.fall_factor, terminal)
     full = [np.full(len(steps), value, dtype=np.float64) for value in (*values, *rest)]
     return Launches(full[0], full[1], steps, full[2], full[3], full[4])
@@ -102,7 +106,8 @@ def _gap_reach(
     where: NDArray[np.intp],
 ) -> GapReach:
     """Return what is crossed at one level, spread from distinct steps to rates."""
-    jumps = flown if level == 0.0 else fly_many(brief.rule, launches, level)
+    second = brief.jumps[0].second
+    jumps = flown if level == 0.0 else fly_many(brief.rule, launches, level, second=second)
     airtime = of_flight("airtime", brief.rule, launches, jumps)
     widest = max_gap(airtime, constants.run_speed, constants.edge_allowance)
     sure = sure_gap(widest, constants.run_speed, np.asarray(launches.step))

@@ -8,12 +8,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from designer.brief.model import Brief, Ledge
+from designer.brief.model import Brief
 from designer.brief.rates import step_of_hz
 from designer.motion.batch import fly_many
 from designer.motion.rule import Constants
-from designer.objective.score import NEGLIGIBLE, gap_spare, ledge_spare
-from designer.objective.table import Designs, Fly, JumpTable, extremes, kinematics, scalars
+from designer.objective.score import NEGLIGIBLE, feature_spare
+from designer.objective.table import Designs, Fly, JumpTable, extremes, kinematics, own_scalars
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -29,7 +29,7 @@ class RateSweep:
     steps: NDArray[np.float64]
     """Seconds, what frame_time makes of each rate."""
     tables: tuple[JumpTable, ...]
-    """One a jump; a "design" of these tables is a rate."""
+    """Of the one jump; a "design" of its table is a rate."""
 
 
 def runs(failing: Sequence[bool] | NDArray[np.bool_], first: int = LOWEST_HZ) -> Iterator[tuple[int, int]]:
@@ -51,7 +51,7 @@ def band_names(failing: Sequence[bool] | NDArray[np.bool_], first: int = LOWEST_
 def sweep_rates(
     brief: Brief, constants: Constants, *, compiled: bool | None = None, fly: Fly = fly_many
 ) -> RateSweep:
-    """Measure one set at every whole rate from 20 to 1000 Hz; rates with the same step are flown once."""
+    """Measure one jump at every whole rate from 20 to 1000 Hz; rates with the same step are flown once."""
     hz = np.arange(LOWEST_HZ, HIGHEST_HZ + 1)
     steps = np.array([step_of_hz(int(rate), brief.rule.frame_time) for rate in hz])
     distinct, where = np.unique(steps, return_inverse=True)
@@ -59,32 +59,25 @@ def sweep_rates(
     designs = Designs.of([constants] * len(distinct))
     names = ("apex", "airtime")
     kin = kinematics(brief, designs.launches(distinct[:, None]), compiled=compiled, names=names, fly=fly)
-    kin = type(kin)(
-        steps[:, None],
-        kin.lands[where],
-        {name: values[where] for name, values in kin.flight.items()},
-        {level: values[where] for level, values in kin.airtimes.items()},
-    )
+    kin = kin.spread(where, steps[:, None])
     everywhere = Designs.of([constants] * len(hz))
-    return RateSweep(hz, steps, extremes(brief, kin, 0, (), scalars(brief, everywhere, constants)))
+    return RateSweep(hz, steps, extremes(brief, kin, 0, (), own_scalars(constants, everywhere)))
 
 
-def failing_bands(brief: Brief, sweep: RateSweep) -> tuple[tuple[tuple[str, ...], ...], tuple[str, ...]]:
-    """Return for each feature (ledges, then gaps) the bands where it fails, and where a jump never lands.
+def failures(brief: Brief, sweep: RateSweep) -> tuple[list[NDArray[np.bool_]], NDArray[np.bool_]]:
+    """Return at which rates of a sweep each feature fails, and at which the jump never lands, (rates,).
 
     A feature fails too where its jump never lands: nobody can say then what it reaches.
     """
-    bands = []
+    (jump,), (table,) = brief.jumps, sweep.tables
+    found = []
     for feature in brief.features:
-        fails = np.zeros(len(sweep.hz), dtype=bool)
-        for table in sweep.tables:
-            if table.name not in feature.by:
-                continue
-            if isinstance(feature, Ledge):
-                spare = ledge_spare(feature, table)
-            else:
-                spare = gap_spare(feature, table, brief.rule.contact_tolerance)[0]
-            fails |= ~table.lands | (spare < -NEGLIGIBLE)
-        bands.append(band_names(fails))
-    stuck = np.logical_or.reduce([~table.lands for table in sweep.tables])
-    return tuple(bands), band_names(stuck)
+        spare, _ = feature_spare(brief, feature, jump, table)
+        found.append(~table.lands | (spare < -NEGLIGIBLE))
+    return found, ~table.lands
+
+
+def failing_bands(brief: Brief, sweep: RateSweep) -> tuple[tuple[tuple[str, ...], ...], tuple[str, ...]]:
+    """Return for each feature (in the order of the brief) where it fails, and where nothing lands."""
+    found, stuck = failures(brief, sweep)
+    return tuple(band_names(fails) for fails in found), band_names(stuck)

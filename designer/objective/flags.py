@@ -21,10 +21,9 @@ def find_flags(
     brief: Brief,
     constants: Constants,
     rows: Sequence[RateRow],
-    features: Sequence[FeatureVerdict],
     stuck: Sequence[str],
 ) -> tuple[str, ...]:
-    """Return what to know, a short phrase each, for rows with the nominal rate first.
+    """Return what to know of one jump, a short phrase each, for rows with the nominal rate first.
 
     stuck names the bands of rates at which the jump never lands.
     """
@@ -41,12 +40,12 @@ def find_flags(
         if not bool(np.all(has_closed_form(brief.rule, np.array([constants.grain])))):
             found.append("no closed form for this rule and grain: every jump is stepped")
     found += _float_noise(constants, list(seen))
-    return (*found, *_fairness(brief, rows), *_between(rows, features))
+    return (*found, *_fairness(brief, rows))
 
 
 def _ties(brief: Brief, constants: Constants, steps: Sequence[float]) -> list[str]:
     """Name the steps at which g·h sits on a tie."""
-    gravities = {constants.gravity, constants.gravity * constants.fall_factor}
+    gravities = {constants.pull, constants.pull * constants.fall_factor}
     q = constants.grain
     return [
         f"tie at {step_name(step)}"
@@ -61,7 +60,7 @@ def _float_noise(constants: Constants, steps: Sequence[float]) -> list[str]:
         return []
     found = []
     for step in steps:
-        ratio = constants.launch_speed / (constants.gravity * step)
+        ratio = constants.launch_speed / (constants.pull * step)
         if abs(ratio - round(ratio)) < 1e-9 * max(1.0, ratio):
             found.append(f"v comes to 0 after {round(ratio)} whole steps of {step_name(step)}: noise decides")
     return found
@@ -72,20 +71,20 @@ def _near_flip(brief: Brief, constants: Constants, steps: Sequence[float]) -> li
     nearest: tuple[float, float, float] | None = None
     for step in steps:
         for factor in sorted({1.0, constants.fall_factor}):
-            gravity = constants.gravity * factor
+            gravity = constants.pull * factor
             if bool(is_tie(brief.rule, gravity, constants.grain, step)):
                 continue
             for flip in flips_near(brief.rule, gravity, constants.grain, step, 1):
-                away = abs(float(flip) - gravity) / factor
+                away = abs(float(flip) - gravity) / factor / constants.gravity_factor
                 if nearest is None or away < nearest[0]:
-                    nearest = (away, float(flip) / factor, step)
+                    nearest = (away, float(flip) / factor / constants.gravity_factor, step)
     if nearest is None or nearest[0] > NEAR * constants.gravity:
         return []
     away, flip, step = nearest
     return [f"flip at gravity {flip:.6g}, {away:.3g} away, at {step_name(step)}"]
 
 
-def _between(rows: Sequence[RateRow], features: Sequence[FeatureVerdict]) -> list[str]:
+def between(rows: Sequence[RateRow], features: Sequence[FeatureVerdict]) -> list[str]:
     """Say which demands hold at every rate of the brief but fail at one between them."""
     steps = [row.step for row in rows if row.supported]
     low, high = 1.0 / max(steps), 1.0 / min(steps)

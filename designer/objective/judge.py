@@ -4,47 +4,50 @@ from __future__ import annotations
 
 import base64
 import hashlib
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import astuple
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from designer.brief.model import Brief, Gap, JumpBrief, Ledge, Rate
-from designer.motion.grain import flip_margin
-from designer.motion.jumps import Jumps, Launches, Status
-from designer.motion.measures import MEASURES, OF_FLIGHT, max_gap, sure_gap
-from designer.motion.rule import Constants, Rule
-from designer.motion.simulate import simulate
-from designer.objective.bands import failing_bands, sweep_rates
-from designer.objective.flags import find_flags
+from designer.brief.model import Brief
+from designer.motion.rule import SHARED, Constants, Rule, Second
+from designer.objective.bands import band_names
+from designer.objective.flags import between
 from designer.objective.modules import ObjectiveModule
-from designer.objective.score import (
-    NEGLIGIBLE,
-    Scores,
-    deviation,
-    gap_spare,
-    ledge_spare,
-    nine_digits,
-    score,
-    spread_of,
-)
-from designer.objective.table import Designs, JumpTable, Kinematics, extremes, kinematics, scalars
-from designer.objective.verdict import FeatureVerdict, JumpVerdict, RateRow, TargetVerdict, Verdict, Worst
+from designer.objective.one_jump import OneJump, judge_jump, nine, one_number
+from designer.objective.rows import binding, failing_rows
+from designer.objective.score import NEGLIGIBLE, put_together, views_of
+from designer.objective.verdict import FeatureVerdict, Verdict, Worst
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
 
-def mark(constants: Constants, rule: Rule) -> str:
-    """Return four letters and digits that stay the same as long as constants and rule do."""
-    text = repr((astuple(constants), astuple(rule)))
+def mark(
+    constants: Constants | Sequence[Constants], rule: Rule, seconds: Sequence[Second | None] = ()
+) -> str:
+    """Return four letters and digits that stay the same as long as constants and rule do.
+
+    Of several jumps the constants of each, in the order of the brief, and their second jumps count.
+    """
+    if isinstance(constants, Constants):
+        text = repr((_numbers(constants), astuple(rule)))
+    else:
+        second = tuple(None if one is None else astuple(one) for one in seconds)
+        text = repr((tuple(_numbers(one) for one in constants), second, astuple(rule)))
     return base64.b32encode(hashlib.sha256(text.encode()).digest())[:4].decode().lower()
+
+
+def _numbers(constants: Constants) -> tuple[object, ...]:
+    """Return what counts for the mark: a factor of 1 on gravity says nothing."""
+    numbers = astuple(constants)
+    return numbers if constants.gravity_factor != 1.0 else numbers[:-1]
 
 
 def judge(
     brief: Brief,
-    constants: Constants,
+    constants: Constants | Sequence[Constants],
     *,
     bands: bool = True,
     compiled: bool | None = None,
@@ -52,160 +55,113 @@ def judge(
 ) -> Verdict:
     """Step one set of constants at every rate of the brief and score it.
 
-    Every number comes from the kernel, to the last bit. With bands=False the bands of rates at which
-    features fail are left out, which saves a sweep over a thousand rates. `compiled` is passed on to
-    `simulate`. In a fixed loop the constants need a step (ValueError).
+    Of a brief with several jumps a set is one Constants a jump, in its order, with equal gravity, step and
+    grain (ValueError). Every number comes from the kernel, to the last bit. With bands=False the bands of
+    rates at which features fail are left out, which saves a sweep over a thousand rates. `compiled` is
+    passed on to `simulate`. In a fixed loop the constants need a step (ValueError). Of a level list only the
+    rows that decide are judged like ledges and gaps; with bands, all others that fail are named too.
     """
-    rates = (brief.nominal(constants), *brief.rates.supported, *brief.rates.watched)
-    designs = Designs.of([constants])
-    launches = designs.launches(np.array([[rate.step for rate in rates]]))
-    statuses: dict[float, NDArray[np.int8]] = {}
-
-    def fly(rule: Rule, batch: Launches, level: float, **options: bool) -> Jumps:
-        flown = simulate(rule, batch, level, **options)
-        statuses[level] = flown.status
-        return flown
-
-    kin = kinematics(brief, launches, compiled=compiled, names=OF_FLIGHT, fly=fly)
-    supported = range(1, 1 + len(brief.rates.supported))
-    tables = extremes(brief, kin, 0, supported, scalars(brief, designs, constants))
-    terms = {name: d for module in objectives for name, d in module.terms(designs, tables).items()}
-    scores = score(brief, tables, terms)
-    rows = _rate_rows(brief, constants, rates, kin, statuses[0.0][0])
-    worst = _worst(brief, tables, terms, bool(tables[0].lands[0]))
-    failing: tuple[tuple[str, ...], ...] = ((),) * (len(brief.ledges) + len(brief.gaps))
-    stuck: tuple[str, ...] = ()
-    if bands:
-        failing, stuck = failing_bands(brief, sweep_rates(brief, constants, compiled=compiled))
-    features = [
-        _feature(brief, feature, constants, kin, rates, bands_of)
-        for feature, bands_of in zip(brief.features, failing, strict=True)
+    sets = _each(brief, constants)
+    every, brief = brief, binding(brief)
+    views = views_of(brief)
+    found = [
+        judge_jump(view, one, bands=bands, compiled=compiled) for view, one in zip(views, sets, strict=True)
     ]
+    tables = tuple(one.tables[0] for one in found)
+    designs = {jump.name: one.designs for jump, one in zip(brief.jumps, found, strict=True)}
+    terms = {name: d for module in objectives for name, d in module.terms(designs, tables).items()}
+    scores = put_together(brief, [one.parts for one in found], terms)
+    features = _features(brief, found)
+    ends = np.cumsum([len(brief.ledges), len(brief.gaps), len(brief.blocks)]).tolist()
     return Verdict(
-        constants=constants,
-        mark=mark(constants, brief.rule),
-        jumps=tuple(
-            _jump(jump, table, constants, rows) for jump, table in zip(brief.jumps, tables, strict=True)
+        constants=sets[0],
+        mark=mark(sets, brief.rule, [jump.second for jump in brief.jumps])
+        if brief.several
+        else mark(sets[0], brief.rule),
+        jumps=tuple(one.verdict for one in found),
+        miss=one_number(scores.miss),
+        rate_spread=one_number(scores.rate_spread),
+        cost=one_number(scores.cost),
+        worst=_worst(found, terms),
+        violation=one_number(scores.violation),
+        feasible=bool(scores.feasible[0]),
+        ledges=tuple(features[: ends[0]]),
+        gaps=tuple(features[ends[0] : ends[1]]),
+        blocks=tuple(features[ends[1] : ends[2]]),
+        ceilings=tuple(features[ends[2] :]),
+        flags=(
+            *_flags(brief, found),
+            *between((found[0].verdict.nominal, *found[0].verdict.rates), features),
         ),
-        miss=_number(scores.miss),
-        rate_spread=_number(scores.rate_spread),
-        cost=_number(scores.cost),
-        worst=worst,
-        violation=_number(scores.violation),
-        feasible=bool(_feasible(scores)),
-        ledges=tuple(features[: len(brief.ledges)]),
-        gaps=tuple(features[len(brief.ledges) :]),
-        flags=find_flags(brief, constants, rows, features, stuck),
         extras={name: float(d[0]) for name, d in terms.items()},
+        rows=sum(bool(one.source) for one in every.features),
+        failing_rows=failing_rows(every, views, found) if bands and every is not brief else (),
+        several=brief.several,
     )
 
 
-def _feasible(scores: Scores) -> bool:
-    return bool(scores.feasible[0])
+def _each(brief: Brief, constants: Constants | Sequence[Constants]) -> tuple[Constants, ...]:
+    """Return one set of constants a jump."""
+    sets = (constants,) if isinstance(constants, Constants) else tuple(constants)
+    if len(sets) != len(brief.jumps):
+        names = ", ".join(jump.name for jump in brief.jumps)
+        raise ValueError(f"a set of this brief has one Constants for each of {names}; got {len(sets)}")
+    for name in SHARED:
+        if len({getattr(one, name) for one in sets}) > 1:
+            raise ValueError(f"{name} is everybody's: jumps of one set must have the same")
+    return sets
 
 
-def _number(values: NDArray[np.float64]) -> float | None:
-    """Return the one number of an array, None where it does not exist."""
-    value = float(np.ravel(values)[0])
-    return value if np.isfinite(value) else None
+def _flags(brief: Brief, found: Sequence[OneJump]) -> tuple[str, ...]:
+    """Return what to know; of several jumps with the names of those of which it holds, unless of all."""
+    if len(found) == 1:
+        return found[0].flags
+    holds: dict[str, list[str]] = {}
+    for jump, one in zip(brief.jumps, found, strict=True):
+        for flag in one.flags:
+            holds.setdefault(flag, []).append(jump.name)
+    said = [flag for flag, names in holds.items() if len(names) == len(found)]
+    return (*said, *(f"{', '.join(names)}: {flag}" for flag, names in holds.items() if flag not in said))
 
 
-def _nine(values: NDArray[np.float64]) -> float:
-    """Return the one deviation of an array to nine digits, so that 1.0000000000000009 is not beyond 1."""
-    return float(nine_digits(values)[0])
-
-
-def _rate_rows(
-    brief: Brief,
-    constants: Constants,
-    rates: Sequence[Rate],
-    kin: Kinematics,
-    statuses: NDArray[np.int8],
-) -> tuple[RateRow, ...]:
-    """Return a row a rate, the nominal one first, with every measure there is."""
-    steps = np.array([rate.step for rate in rates])
-    columns: dict[str, NDArray[np.float64]] = {name: values[0] for name, values in kin.flight.items()}
-    reach = max_gap(columns["airtime"], constants.run_speed, constants.edge_allowance)
-    columns["max_gap"] = reach
-    columns["sure_gap"] = sure_gap(reach, constants.run_speed, steps)
-    columns["step_top"] = columns["apex"] + constants.step_up
-    used = steps[: 1 + len(brief.rates.supported)]
-    margin = flip_margin(brief.rule, constants.gravity, constants.grain, constants.fall_factor, used)
-    columns["flip_margin"] = np.broadcast_to(margin, steps.shape)
-    rows = []
-    for i, rate in enumerate(rates):
-        lands = statuses[i] == Status.LANDS
-        measures = {name: _number(columns[name][i]) if lands else None for name in MEASURES}
-        rows.append(RateRow(rate.name, rate.step, rate.supported, Status(statuses[i]).text, measures))
-    return tuple(rows)
-
-
-def _jump(jump: JumpBrief, table: JumpTable, constants: Constants, rows: tuple[RateRow, ...]) -> JumpVerdict:
-    """Return one jump at every rate, with how far each target is off."""
-    lands = bool(table.lands[0])
-
-    def spread(name: str) -> float | None:
-        return _number(spread_of(table.measures[name])) if lands else None
-
-    targets = []
-    for target in jump.targets:
-        measure = table.measures[target.measure]
-        d = _nine(deviation(target, measure)) if lands else None
-        if target.aim is not None:
-            value = measure.nominal
-        elif target.at_least is None or (d is not None and d > 0):
-            value = measure.high
-        else:
-            value = measure.low
-        targets.append(TargetVerdict(target, _number(value) if lands else None, d, spread(target.measure)))
-    spreads = {name: spread(name) for name in ("apex", "airtime", "max_gap")}
-    return JumpVerdict(jump.name, constants, rows[1:], rows[0], spreads, tuple(targets))
-
-
-def _worst(
-    brief: Brief,
-    tables: Sequence[JumpTable],
-    terms: Mapping[str, NDArray[np.float64]],
-    lands: bool,
-) -> Worst | None:
-    """Return the largest |deviation| and where; None without targets or where the jump never lands."""
-    if not lands:
+def _worst(found: Sequence[OneJump], terms: dict[str, NDArray[np.float64]]) -> Worst | None:
+    """Return the largest |deviation| and where; None without targets or where a jump never lands."""
+    if not all(one.tables[0].lands[0] for one in found):
         return None
-    found = [Worst(abs(_nine(d)), "objective", name) for name, d in terms.items()]
-    for jump, table in zip(brief.jumps, tables, strict=True):
-        for target in jump.targets:
-            d = deviation(target, table.measures[target.measure])
-            found.append(Worst(abs(_nine(d)), jump.name, target.measure))
-    return max(found, key=lambda one: one.value, default=None)
+    every = [Worst(abs(nine(d)), "objective", name) for name, d in terms.items()]
+    every += [worst for one in found for worst in one.worst]
+    return max(every, key=lambda one: one.value, default=None)
 
 
-def _feature(
-    brief: Brief,
-    feature: Ledge | Gap,
-    constants: Constants,
-    kin: Kinematics,
-    rates: Sequence[Rate],
-    failing: tuple[str, ...],
-) -> FeatureVerdict:
-    """Return how a ledge or gap stands at its worst nominal or supported rate."""
-    worst_spare, worst_rate = np.inf, None
-    for column in range(1 + len(brief.rates.supported)):
-        for table in extremes(brief, kin, column, (), scalars(brief, Designs.of([constants]), constants)):
-            if table.name not in feature.by:
+def _features(brief: Brief, found: Sequence[OneJump]) -> list[FeatureVerdict]:
+    """Return how each feature stands at the worst nominal or supported rate of the jumps that must."""
+    names = [jump.name for jump in brief.jumps]
+    seen = dict.fromkeys(names, 0)
+    verdicts = []
+    for feature in brief.features:
+        least: tuple[float, str | None] = (np.inf, None)
+        worst_jump = None
+        fails: list[NDArray[np.bool_]] = []
+        for name, one in zip(names, found, strict=True):
+            if brief.several and name not in feature.by:
                 continue
-            if isinstance(feature, Ledge):
-                spare = ledge_spare(feature, table)
-            else:
-                spare = gap_spare(feature, table, brief.rule.contact_tolerance)[0]
-            value = float(spare[0]) if table.lands[0] else -np.inf
-            if value < worst_spare:
-                worst_spare, worst_rate = value, rates[column].name
-    return FeatureVerdict(
-        name=feature.name,
-        by=feature.by,
-        must=feature.must,
-        holds=bool(worst_spare >= -NEGLIGIBLE),
-        spare=float(worst_spare) if np.isfinite(worst_spare) else None,
-        worst_rate=worst_rate,
-        failing=failing,
-    )
+            at = seen[name]  # a view has its jump's features in the order of the brief
+            seen[name] += 1
+            if one.spares[at][0] < least[0]:
+                least, worst_jump = one.spares[at], name
+            fails += [one.fails[at]] if one.fails else []
+        verdicts.append(
+            FeatureVerdict(
+                name=feature.name,
+                by=feature.by,
+                must=feature.must,
+                holds=bool(least[0] >= -NEGLIGIBLE),
+                spare=float(least[0]) if np.isfinite(least[0]) else None,
+                worst_rate=least[1],
+                failing=band_names(np.logical_or.reduce(fails)) if fails else (),
+                worst_jump=worst_jump if brief.several else None,
+                place=feature.place,
+                source=feature.source,
+            )
+        )
+    return verdicts

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from designer.errors import Fault, InputError
-from designer.motion.rule import SEARCHABLE
+from designer.motion.rule import OWN, SEARCHABLE, SHARED
 from designer.objective.table import Designs, JumpTable
 
 if TYPE_CHECKING:
@@ -27,24 +27,29 @@ class ObjectiveModule:
     """A loaded objective module.
 
     The file defines `deviations(constants, jumps)`: constants maps each constant's name to an array
-    (designs,), jumps maps each jump's name to its measures, by name, each with the arrays nominal, low and
-    high (designs,). It returns one array (designs,) a term, by name: how far off, in tolerances.
+    (designs,) (of several jumps "walk.launch_speed", but gravity, step and grain plainly), jumps maps each
+    jump's name to its measures, by name, each with the arrays nominal, low and high (designs,). It returns
+    one array (designs,) a term, by name: how far off, in tolerances.
     """
 
     name: str
     deviations: Deviations
 
-    def terms(self, designs: Designs, tables: Sequence[JumpTable]) -> dict[str, NDArray[np.float64]]:
+    def terms(
+        self, designs: Designs | Mapping[str, Designs], tables: Sequence[JumpTable]
+    ) -> dict[str, NDArray[np.float64]]:
         """Return the module's terms for these designs, named "module: term"; NaN where a jump never lands.
 
+        Of several jumps, designs are those of each by its name, and the module sees gravity, step and grain
+        once and the others as "walk.launch_speed".
         Raises InputError where the module fails or returns something else than one number a design.
         """
-        constants = {name: getattr(designs, name) for name in SEARCHABLE}
+        constants = _constants(designs)
         jumps = {table.name: table.measures for table in tables}
         try:
             with redirect_stdout(sys.stderr):  # standard output may be a JSON document
                 found = dict(self.deviations(constants, jumps))
-            count = len(designs.gravity)
+            count = len(tables[0].lands)
             terms = {
                 f"{self.name}: {term}": np.broadcast_to(np.asarray(values, dtype=np.float64), (count,))
                 for term, values in found.items()
@@ -67,6 +72,17 @@ class ObjectiveModule:
                 fix="correct the module; objectives/on_the_beat.py is one to start from",
             )
         )
+
+
+def _constants(designs: Designs | Mapping[str, Designs]) -> dict[str, NDArray[np.float64]]:
+    """Return the constants by the names under which a module sees them."""
+    if isinstance(designs, Designs):
+        return {name: getattr(designs, name) for name in SEARCHABLE}
+    each = list(designs.items())
+    if len(each) == 1:
+        return _constants(each[0][1])
+    shared = {name: getattr(each[0][1], name) for name in SHARED}
+    return shared | {f"{jump}.{name}": getattr(one, name) for jump, one in each for name in OWN}
 
 
 def load_objective(path: Path) -> ObjectiveModule:

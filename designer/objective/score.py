@@ -8,7 +8,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from designer.brief.model import Brief, Gap, JumpBrief, Ledge, Target
+from designer.brief.model import Block, Brief, Ceiling, Feature, Gap, JumpBrief, Ledge, Target
+from designer.motion.measures import head_top
 from designer.objective.table import Extremes, JumpTable, at_level, weights
 
 if TYPE_CHECKING:
@@ -112,6 +113,19 @@ def gap_spare(gap: Gap, jump: JumpTable, contact_tolerance: float) -> tuple[Floa
     return spare, np.zeros(spare.shape, dtype=bool)
 
 
+def block_spare(block: Block, jump: JumpTable) -> Floats:
+    """Return the signed slack of a block after its margin at the worst rate: length of way above its top."""
+    clearance = jump.measures[at_level("clearance", block.height)]
+    if block.must == "clear":
+        return clearance.low - (block.length + block.margin)
+    return (block.length - block.margin) - clearance.high
+
+
+def ceiling_spare(ceiling: Ceiling, jump: JumpTable) -> Floats:
+    """Return the signed slack under a ceiling after its margin at the worst rate, length."""
+    return (ceiling.height - ceiling.margin) - head_top(jump.measures["apex"].high, ceiling.body_height)
+
+
 def tolerance(jump: JumpBrief, measures: Sequence[str], size: float) -> float:
     """Return in what units a feature's shortfall counts: the jump's `within`, else 1 % of the feature."""
     for target in jump.targets:
@@ -125,58 +139,90 @@ def _shortfall(spare: Floats) -> Floats:
     return np.where(short <= NEGLIGIBLE, 0.0, short)
 
 
-def _violations(brief: Brief, tables: Mapping[str, JumpTable]) -> tuple[Floats, Floats]:
+@dataclass(frozen=True, slots=True)
+class Parts:
+    """What one jump of many designs adds to their scores, arrays (designs,) before anything is rounded."""
+
+    squares: Floats
+    """W·Σ w·d² over the jump's targets, with W the jump's own weight."""
+    spreads: Floats
+    """The same of s."""
+    violation: Floats
+    """The sum of the shortfalls of the features in whose `by` the jump is, in tolerances."""
+    worst: Floats
+    """The largest |d|."""
+    lands: NDArray[np.bool_]
+    shortfalls: Floats
+    """(designs, features of the view), length."""
+
+
+def parts(view: Brief, tables: Sequence[JumpTable]) -> Parts:
+    """Return what a jump adds: the view of one of several jumps (or a brief with one), and its one table."""
+    (jump,), (table,) = view.jumps, tables
+    count = len(table.lands)
+    squares, spreads, worst = np.zeros(count), np.zeros(count), np.zeros(count)
+    for target in jump.targets:
+        measure = table.measures[target.measure]
+        d = deviation(target, measure)
+        s = spread_of(measure) / target.within
+        weight = jump.weight * target.weight
+        squares = squares + weight * (d * d)
+        spreads = spreads + weight * (s * s)
+        worst = np.maximum(worst, np.abs(d))
+    shortfalls, violation = _violations(view, jump, table)
+    return Parts(squares, spreads, violation, worst, table.lands, shortfalls)
+
+
+def _violations(view: Brief, jump: JumpBrief, table: JumpTable) -> tuple[Floats, Floats]:
     """Return each feature's shortfall, (designs, features), and the sum of all in tolerances, (designs,)."""
-    jumps = {jump.name: jump for jump in brief.jumps}
-    count = len(next(iter(tables.values())).lands)
+    count = len(table.lands)
     total = np.zeros(count)
     columns: list[Floats] = []
-    for feature in brief.features:
-        worst = np.zeros(count)
-        for name in feature.by:
-            jump, table = jumps[name], tables[name]
-            if isinstance(feature, Ledge):
-                short = _shortfall(ledge_spare(feature, table))
-                unit: Floats | float = tolerance(jump, ("apex", "step_top"), feature.height)
-            else:
-                spare, in_height = gap_spare(feature, table, brief.rule.contact_tolerance)
-                short = _shortfall(spare)
-                unit = np.where(
-                    in_height,
-                    tolerance(jump, ("apex", "step_top"), feature.far_level),
-                    tolerance(jump, ("max_gap", "sure_gap"), feature.width),
-                )
-            total = total + short / unit
-            worst = np.maximum(worst, short)
-        columns.append(worst)
+    for feature in view.features:
+        spare, unit = feature_spare(view, feature, jump, table)
+        short = _shortfall(spare)
+        total = total + short / unit
+        columns.append(np.maximum(np.zeros(count), short))
     return np.column_stack(columns) if columns else np.zeros((count, 0)), total
 
 
-def score(brief: Brief, tables: Sequence[JumpTable], extra_terms: Terms | None = None) -> Scores:
-    """Score designs whose jumps are tabled, one table a jump of the brief.
+def feature_spare(
+    view: Brief, feature: Feature, jump: JumpBrief, table: JumpTable
+) -> tuple[Floats, Floats | float]:
+    """Return a jump's signed slack at a feature, length, and in what units a shortfall of it counts."""
+    if isinstance(feature, Ledge):
+        return ledge_spare(feature, table), tolerance(jump, ("apex", "step_top"), feature.height)
+    if isinstance(feature, Ceiling):
+        return ceiling_spare(feature, table), tolerance(jump, ("apex", "step_top"), feature.height)
+    if isinstance(feature, Block):
+        return block_spare(feature, table), tolerance(jump, ("max_gap", "sure_gap"), feature.length)
+    spare, in_height = gap_spare(feature, table, view.rule.contact_tolerance)
+    unit = np.where(
+        in_height,
+        tolerance(jump, ("apex", "step_top"), feature.far_level),
+        tolerance(jump, ("max_gap", "sure_gap"), feature.width),
+    )
+    return spare, unit
 
-    extra_terms are deviations of objective modules; each counts like a target of weight 1.
+
+def put_together(brief: Brief, found: Sequence[Parts], extra_terms: Terms | None = None) -> Scores:
+    """Return the scores of designs from what each jump adds, in the order of the brief's jumps.
+
+    miss = sqrt(sum of squares / sum of weights), and the like of rate spread. extra_terms are deviations of
+    objective modules; each counts like a target of weight 1.
     """
-    by_name = {table.name: table for table in tables}
-    count = len(tables[0].lands)
-    squares, spreads, worst = np.zeros(count), np.zeros(count), np.zeros(count)
-    for jump in brief.jumps:
-        for target in jump.targets:
-            measure = by_name[jump.name].measures[target.measure]
-            d = deviation(target, measure)
-            s = spread_of(measure) / target.within
-            weight = jump.weight * target.weight
-            squares = squares + weight * (d * d)
-            spreads = spreads + weight * (s * s)
-            worst = np.maximum(worst, np.abs(d))
+    squares, spreads, violation = found[0].squares, found[0].spreads, found[0].violation
+    worst, lands = found[0].worst, found[0].lands
+    for part in found[1:]:
+        squares, spreads = squares + part.squares, spreads + part.spreads
+        violation, worst = violation + part.violation, np.maximum(worst, part.worst)
+        lands = lands & part.lands
     total = weights(brief.jumps)
     for d in (extra_terms or {}).values():
         squares, worst = squares + d * d, np.maximum(worst, np.abs(d))
     miss_weight = total + len(extra_terms or {})
     miss = np.sqrt(squares / miss_weight) if miss_weight else squares
     spread = np.sqrt(spreads / total) if total else spreads
-    shortfalls, violation = _violations(brief, by_name)
-    lands = np.logical_and.reduce([table.lands for table in tables])
     cost = miss + brief.rates.spread_weight * spread
     return Scores(
         miss=_compared(miss, lands),
@@ -184,5 +230,31 @@ def score(brief: Brief, tables: Sequence[JumpTable], extra_terms: Terms | None =
         cost=_compared(cost, lands),
         violation=nine_digits(np.where(lands, violation, np.inf)),
         worst=nine_digits(np.where(lands, worst, np.nan)),
-        shortfalls=np.where(lands[:, None], shortfalls, np.inf),
+        shortfalls=np.where(lands[:, None], _shortfalls(brief, found), np.inf),
     )
+
+
+def _shortfalls(brief: Brief, found: Sequence[Parts]) -> Floats:
+    """Return each feature's largest shortfall over the jumps that must, (designs, features)."""
+    if not brief.several:
+        return found[0].shortfalls
+    count = len(found[0].lands)
+    columns = np.zeros((count, len(brief.features)))
+    for jump, part in zip(brief.jumps, found, strict=True):
+        mine = [index for index, feature in enumerate(brief.features) if jump.name in feature.by]
+        columns[:, mine] = np.maximum(columns[:, mine], part.shortfalls)
+    return columns
+
+
+def views_of(brief: Brief) -> tuple[Brief, ...]:
+    """Return the view of each jump in the order of the brief; a brief with one jump is its own view."""
+    return tuple(brief.view(jump.name) for jump in brief.jumps) if brief.several else (brief,)
+
+
+def score(brief: Brief, tables: Sequence[JumpTable], extra_terms: Terms | None = None) -> Scores:
+    """Score designs whose jumps are tabled, one table a jump of the brief, in its order.
+
+    extra_terms are deviations of objective modules; each counts like a target of weight 1.
+    """
+    pairs = zip(views_of(brief), tables, strict=True)
+    return put_together(brief, [parts(view, (table,)) for view, table in pairs], extra_terms)

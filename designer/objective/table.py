@@ -3,16 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from designer.brief.model import Brief, JumpBrief, Loop
-from designer.motion.batch import fly_many
+from designer.motion.batch import above, fly_many
 from designer.motion.grain import flip_margin
 from designer.motion.jumps import Jumps, Launches, Status
-from designer.motion.measures import OF_FLIGHT, max_gap, of_flight, sure_gap
+from designer.motion.measures import OF_FLIGHT, clearance, max_gap, of_flight, sure_gap
 from designer.motion.rule import Constants
 
 if TYPE_CHECKING:
@@ -35,11 +35,13 @@ class Designs:
     fall_factor: Floats
     terminal_speed: Floats
     """Infinity means no limit."""
+    gravity_factor: Floats = field(default_factory=lambda: np.ones(1))
+    """What the jump makes of the game's gravity; (1,) of ones where nothing else is said."""
 
     def launches(self, steps: Floats) -> Launches:
         """Return the designs as (designs, 1) against `steps`, (columns,) or (designs, columns), seconds."""
         return Launches(
-            self.gravity[:, None],
+            (self.gravity * self.gravity_factor)[:, None],
             self.launch_speed[:, None],
             steps,
             self.grain[:, None],
@@ -51,6 +53,7 @@ class Designs:
         """Return one design as constants; step_up and edge_allowance are the brief's."""
         step_up, edge_allowance = fixed_lengths(brief)
         terminal = float(self.terminal_speed[index])
+        factors = np.broadcast_to(self.gravity_factor, self.gravity.shape)
         return Constants(
             gravity=float(self.gravity[index]),
             launch_speed=float(self.launch_speed[index]),
@@ -61,6 +64,7 @@ class Designs:
             terminal_speed=None if np.isinf(terminal) else terminal,
             step_up=step_up,
             edge_allowance=edge_allowance,
+            gravity_factor=float(factors[index]),
         )
 
     @classmethod
@@ -79,6 +83,7 @@ class Designs:
             run_speed=column("run_speed", 0.0),
             fall_factor=column("fall_factor", 1.0),
             terminal_speed=column("terminal_speed", np.inf),
+            gravity_factor=column("gravity_factor", 1.0),
         )
 
 
@@ -94,6 +99,18 @@ class Kinematics:
     """Measures by name (see designer.motion.measures.OF_FLIGHT)."""
     airtimes: Mapping[float, Floats]
     """Airtime to each landing level that a gap asks for; NaN where the level is out of reach."""
+    above: Mapping[float, Floats] = field(default_factory=dict)
+    """Seconds above each height that a block asks for."""
+
+    def spread(self, where: NDArray[np.intp], steps: Floats) -> Kinematics:
+        """Return the designs at these places, in this order and with these steps."""
+        return Kinematics(
+            steps,
+            self.lands[where],
+            {name: values[where] for name, values in self.flight.items()},
+            {level: values[where] for level, values in self.airtimes.items()},
+            {height: values[where] for height, values in self.above.items()},
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -115,10 +132,12 @@ class JumpTable:
     lands: NDArray[np.bool_]
     """Whether it lands at the nominal and every supported rate, (designs,)."""
     measures: Mapping[str, Extremes]
-    """By measure; for landing levels other than 0 also "max_gap@-40.0" and "sure_gap@-40.0"."""
+    """By measure; for landing levels other than 0 also "max_gap@-40.0" and "sure_gap@-40.0", for blocks
+    "clearance@90.0"."""
 
 
 Fly = Callable[..., Jumps]
+Stay = Callable[..., "Floats"]
 
 
 def at_level(measure: str, level: float) -> str:
@@ -152,25 +171,33 @@ def kinematics(
     compiled: bool | None = None,
     names: Sequence[str] | None = None,
     fly: Fly = fly_many,
+    stay: Stay = above,
 ) -> Kinematics:
-    """Fly launches of shape (designs, 1) by steps (columns,) or (designs, columns) and measure them."""
+    """Fly launches of shape (designs, 1) by steps (columns,) or (designs, columns) and measure them.
+
+    The brief has one jump, or is the view of one: it is that jump's second jump in the air that counts.
+    """
     names = measures_needed(brief) if names is None else names
     rule = brief.rule
+    second = brief.jumps[0].second
+    options: dict[str, Any] = {"workers": workers, "compiled": compiled}
+    if second is not None:
+        options["second"] = second
     levels = sorted({gap.far_level for gap in brief.gaps} - {0.0})
-    flown = fly(
-        rule, launches, 0.0, workers=workers, compiled=compiled, count_near_apex="time_near_apex" in names
-    )
+    flown = fly(rule, launches, 0.0, count_near_apex="time_near_apex" in names, **options)
     flight = {name: np.asfortranarray(of_flight(name, rule, launches, flown)) for name in names}
     airtimes = {0.0: flight["airtime"]}
     for level in levels:
-        down = fly(rule, launches, level, workers=workers, compiled=compiled)
+        down = fly(rule, launches, level, **options)
         airtimes[level] = np.asfortranarray(of_flight("airtime", rule, launches, down))
+    heights = sorted({block.height for block in brief.blocks})
+    stays = {one: np.asfortranarray(stay(rule, launches, one, **options)) for one in heights}
     lands = flown.status == Status.LANDS
     for level in levels:
         # A far side below that is not reached in the longest flight: nobody can say how wide a gap that is.
         lands = lands & ~np.isnan(airtimes[level]) if level < 0.0 else lands
     lands = np.asfortranarray(lands)
-    return Kinematics(np.asarray(launches.step, dtype=np.float64), lands, flight, airtimes)
+    return Kinematics(np.asarray(launches.step, dtype=np.float64), lands, flight, airtimes, stays)
 
 
 def _over(columns: Sequence[int], values: Floats) -> tuple[Floats, Floats]:
@@ -213,7 +240,7 @@ def extremes(
     """Return nominal, smallest and largest of each measure, one table a jump of the brief.
 
     nominal and supported are columns of the kinematics; constants holds run_speed, step_up, edge_allowance,
-    gravity, grain and fall_factor, each a float or an array (designs,).
+    gravity, gravity_factor, grain and fall_factor, each a float or an array (designs,).
     """
     columns = list(dict.fromkeys([nominal, *supported]))
     lands = np.logical_and.reduce([kin.lands[:, column] for column in columns])
@@ -224,6 +251,9 @@ def extremes(
     measures["step_top"] = Extremes(apex.nominal + rise, apex.low + rise, apex.high + rise)
     for level in kin.airtimes:
         measures |= _gap_extremes(kin, level, nominal, columns, constants)
+    for height, times in kin.above.items():
+        reach = clearance(times, np.reshape(constants["run_speed"], (-1, 1)))
+        measures[at_level("clearance", height)] = Extremes(reach[:, nominal], *_over(columns, reach))
     if any(target.measure == "flip_margin" for jump in brief.jumps for target in jump.targets):
         measures["flip_margin"] = _flip_margins(brief, kin, columns, constants)
     return tuple(JumpTable(jump.name, lands, measures) for jump in brief.jumps)
@@ -236,8 +266,10 @@ def _flip_margins(brief: Brief, kin: Kinematics, columns: Sequence[int], constan
     """
     designs, count = kin.lands.shape
     steps = np.broadcast_to(kin.steps, (designs, count))[:, columns]
-    g, q, factor = (np.asarray(constants[name]) for name in ("gravity", "grain", "fall_factor"))
-    margin = np.broadcast_to(flip_margin(brief.rule, g, q, factor, steps), (designs,))
+    names = ("gravity", "grain", "fall_factor", "gravity_factor")
+    g, q, falling, own = (np.asarray(constants[name]) for name in names)
+    # A jump's own factor divides its margin: it is the game's gravity that a person would move.
+    margin = np.broadcast_to(flip_margin(brief.rule, g * own, q, falling, steps) / own, (designs,))
     margin = np.where(np.isnan(margin), g, margin)
     return Extremes(margin, margin, margin)
 
@@ -258,20 +290,25 @@ def design_tables(
     return extremes(brief, kin, 0, range(1, len(supported) + 1), scalars(brief, designs))
 
 
-def scalars(brief: Brief, designs: Designs, one: Constants | None = None) -> Scalars:
-    """Return what `extremes` wants to know of designs beside their flight.
+def scalars(brief: Brief, designs: Designs) -> Scalars:
+    """Return what `extremes` wants to know of designs beside their flight."""
+    step_up, edge_allowance = fixed_lengths(brief)
+    return {**_of_designs(designs), "step_up": step_up, "edge_allowance": edge_allowance}
 
-    step_up and edge_allowance are the brief's, or those of `one` set that is judged by itself.
-    """
-    step_up, edge_allowance = fixed_lengths(brief) if one is None else (one.step_up, one.edge_allowance)
-    return {
-        "run_speed": designs.run_speed,
-        "step_up": step_up,
-        "edge_allowance": edge_allowance,
-        "gravity": designs.gravity,
-        "grain": designs.grain,
-        "fall_factor": designs.fall_factor,
-    }
+
+def as_flown(constants: Constants) -> Constants:
+    """Return the constants with the gravity that acts on the jump as their own, so without a factor on it."""
+    return replace(constants, gravity=constants.pull, gravity_factor=1.0)
+
+
+def own_scalars(constants: Constants, designs: Designs) -> Scalars:
+    """Return the same for designs that all have the lengths of one set of constants, not the search's."""
+    return {**_of_designs(designs), "step_up": constants.step_up, "edge_allowance": constants.edge_allowance}
+
+
+def _of_designs(designs: Designs) -> Scalars:
+    names = ("run_speed", "gravity", "grain", "fall_factor", "gravity_factor")
+    return {name: getattr(designs, name) for name in names}
 
 
 def weights(jumps: Sequence[JumpBrief]) -> float:

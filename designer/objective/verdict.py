@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from designer.brief.model import Target
 from designer.motion.rule import Constants
@@ -48,6 +48,8 @@ class JumpVerdict:
     spreads: Mapping[str, float | None]
     """apex, airtime and max_gap: max − min over nominal and supported rates."""
     targets: tuple[TargetVerdict, ...]
+    cost: float | None = None
+    """Cost of this jump's targets alone, its part in who pays for whom; None where it never lands."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,6 +65,12 @@ class FeatureVerdict:
     worst_rate: str | None
     failing: tuple[str, ...]
     """Bands of whole rates from 20 to 1000 Hz at which it fails: "77–83 Hz"."""
+    worst_jump: str | None = None
+    """Of several jumps that must, the one with the least slack."""
+    place: Mapping[str, str] = field(default_factory=dict)
+    """Where it is: columns of a level list."""
+    source: str = ""
+    """Of a row of a level list, its file and line."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,6 +87,7 @@ class Verdict:
     """One set of constants against the whole brief."""
 
     constants: Constants
+    """Of several jumps the first one's: gravity, step and grain are everybody's; jumps has each one's."""
     mark: str
     """A short hash of constants and rule."""
     jumps: tuple[JumpVerdict, ...]
@@ -95,6 +104,24 @@ class Verdict:
     """Ties, flips near by, rules that are stepped: "tie at 8 ms"."""
     extras: Mapping[str, float]
     """Terms of objective modules by name, empty without one."""
+    blocks: tuple[FeatureVerdict, ...] = ()
+    ceilings: tuple[FeatureVerdict, ...] = ()
+    rows: int = 0
+    """How many rows the level list has; of these, those that decide stand among the ledges and gaps."""
+    failing_rows: tuple[FeatureVerdict, ...] = ()
+    """Every row of the level list that fails, only where bands were asked for."""
+    several: bool = False
+    """Whether the brief has [jumps]."""
+
+    @property
+    def features(self) -> tuple[FeatureVerdict, ...]:
+        """Every feature in the order of the brief."""
+        return (*self.ledges, *self.gaps, *self.blocks, *self.ceilings)
+
+    @property
+    def sets(self) -> tuple[Constants, ...]:
+        """The constants of each jump, in the order of the brief."""
+        return tuple(jump.constants for jump in self.jumps)
 
     @property
     def on_target(self) -> bool:
