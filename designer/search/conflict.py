@@ -10,8 +10,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from designer.brief.model import Brief, Gap, Ledge
-from designer.objective.score import Scores, nine_digits
+from designer.brief.model import Block, Brief, Feature, Gap, Ledge
+from designer.objective.score import Scores, nine_digits, views_of
 from designer.objective.table import fixed_lengths
 from designer.search.result import Clash
 
@@ -58,48 +58,75 @@ def clashing_sets(patterns: Collection[int], features: int) -> list[tuple[int, .
     return found or [tuple(k for k in range(features) if any(pattern >> k & 1 for pattern in patterns))]
 
 
+VERBS = {
+    "reach": "reach",
+    "cross": "cross",
+    "stay-out": "stay out of",
+    "clear": "clear",
+    "stay-under": "stay under",
+}
+
+
 @dataclass(frozen=True, slots=True)
 class _Demand:
-    """A ledge or gap as a bound on a measure."""
+    """A ledge, gap, block or ceiling as a bound on a measure."""
 
-    feature: Ledge | Gap
+    feature: Feature
     what: str
-    """ "apex" or "gap"."""
+    """ "apex", "gap", or "clearance at 40.0" of a block."""
     at_least: bool
     bound: float
+    jump: str | None = None
+    """Of several jumps the one that must."""
+
+    @property
+    def name(self) -> str:
+        """The feature's name, of several jumps with the one that must."""
+        return self.feature.name if self.jump is None else f"{self.feature.name} ({self.jump})"
 
     def words(self, decimals: int) -> str:
         """Return "at least 120.0"."""
         return f"at {'least' if self.at_least else 'most'} {self.bound:.{decimals}f}"
 
     def sentence(self, decimals: int) -> str:
-        """Return "reach awning: apex at least 112.0"."""
-        verb = {"reach": "reach", "cross": "cross", "stay-out": "stay out of"}[self.feature.must]
-        text = f"{verb} {self.feature.name}: {self.what} {self.words(decimals)}"
-        return text + (f" to a far side at {self.level:g}" if self.level else "")
+        """Return "reach awning: apex at least 112.0", of several jumps with "walk: " before it."""
+        text = f"{VERBS[self.feature.must]} {self.feature.name}: {self.what} {self.words(decimals)}"
+        text += f" to a far side at {self.level:g}" if self.level else ""
+        return text if self.jump is None else f"{self.jump}: {text}"
 
     @property
     def level(self) -> float:
-        """Return the level of a gap's far side; 0 for a ledge."""
+        """Return the level of a gap's far side; 0 for anything else."""
         return self.feature.far_level if isinstance(self.feature, Gap) else 0.0
 
 
 def _demands(brief: Brief) -> list[_Demand]:
-    """Return every feature as a bound, ledges first; step_up is taken off a ledge's height."""
-    rise, _ = fixed_lengths(brief)
+    """Return every feature as a bound, of several jumps one by one; step_up is off a ledge's height."""
     found = []
-    features: list[Ledge | Gap] = [*brief.ledges, *brief.gaps]
-    for feature in features:
-        most = feature.must == "stay-out"
-        size = feature.height - rise if isinstance(feature, Ledge) else feature.width
-        bound = size - feature.margin if most else size + feature.margin
-        found.append(_Demand(feature, "apex" if isinstance(feature, Ledge) else "gap", not most, bound))
+    for view in views_of(brief):
+        rise, _ = fixed_lengths(view)
+        jump = view.jumps[0].name if brief.several else None
+        found += [_demand(feature, rise, jump) for feature in view.features]
     return found
+
+
+def _demand(feature: Feature, rise: float, jump: str | None) -> _Demand:
+    most = feature.must in ("stay-out", "stay-under")
+    if isinstance(feature, Ledge):
+        what, size = "apex", feature.height - rise
+    elif isinstance(feature, Gap):
+        what, size = "gap", feature.width
+    elif isinstance(feature, Block):
+        what, size = f"clearance at {feature.height:g}", feature.length
+    else:
+        what, size = "apex", feature.height - feature.body_height
+    bound = size - feature.margin if most else size + feature.margin
+    return _Demand(feature, what, not most, bound, jump)
 
 
 def _contradiction(low: _Demand, high: _Demand) -> float:
     """Return by how much "at least" and "at most" overlap as written; 0 where they do not."""
-    if low.at_least == high.at_least or low.what != high.what:
+    if low.at_least == high.at_least or low.what != high.what or low.jump != high.jump:
         return 0.0
     if not low.at_least:
         low, high = high, low
@@ -126,7 +153,7 @@ def _clash(demands: Sequence[_Demand], over_rates: float, proved: bool) -> Clash
     places = _decimals(demands)
     short_by = max((_contradiction(a, b) for a, b in combinations(demands, 2)), default=0.0)
     short_by = float(nine_digits(np.array(short_by)))
-    names = _joined([demand.feature.name for demand in demands])
+    names = _joined([demand.name for demand in demands])
     bounds = _joined([demand.words(places) for demand in demands])
     if len(demands) == 1:
         least = f"short by {over_rates:.{places}f} or more at some rate"
@@ -168,8 +195,23 @@ def find_clashes(
     """
     if not patterns:
         return (never_lands(brief),)
+    return tell_clashes(brief, clashing_sets(patterns, count_demands(brief)), least, proved=proved)
+
+
+def count_demands(brief: Brief) -> int:
+    """Return how many demands there are: of several jumps each jump's own."""
+    return sum(len(view.features) for view in views_of(brief))
+
+
+def tell_clashes(
+    brief: Brief,
+    sets: Sequence[Sequence[int]],
+    least: Callable[[Sequence[Sequence[int]]], list[float]],
+    *,
+    proved: bool,
+) -> tuple[Clash, ...]:
+    """Return sets of demands that clash as clashes, the least hopeless last."""
     demands = _demands(brief)
-    sets = clashing_sets(patterns, len(demands))
     found = [
         _clash([demands[k] for k in one], short, proved) for one, short in zip(sets, least(sets), strict=True)
     ]

@@ -16,6 +16,8 @@ from designer.motion.rule import SEARCHABLE
 from designer.objective.modules import ObjectiveModule
 from designer.objective.score import Scores, score
 from designer.objective.table import Designs, design_tables
+from designer.search.looks import Sets
+from designer.search.seeds import seeds
 from designer.search.space import Axis, Space
 
 if TYPE_CHECKING:
@@ -93,14 +95,23 @@ class Evaluator:
             if key not in self._places:
                 fresh.setdefault(key, at)
         if fresh:
-            found = self._measure(designs_of(rows[list(fresh.values())]))
+            found = self._measure(rows[list(fresh.values())])
             self._places |= {key: len(self._places) + k for k, key in enumerate(fresh)}
             self._all = found if self._all is None else _join(self._all, found)
         if self._all is None:
             raise ValueError("no designs to score")
         return pick(self._all, np.array([self._places[key] for key in keys]))
 
-    def _measure(self, designs: Designs) -> Scores:
+    def designs(self, matrix: Floats) -> Designs | Sets:
+        """Return the designs whose constants are the columns of a matrix."""
+        return designs_of(matrix)
+
+    def starts(self) -> Floats:
+        """Return designs for a study to start from, a matrix not yet put onto the space."""
+        return seeds(self.brief, self.space)
+
+    def _measure(self, matrix: Floats) -> Scores:
+        designs = designs_of(matrix)
         tables = design_tables(self.brief, designs, workers=self.workers, compiled=self._compiled(designs))
         terms: dict[str, Floats] = {}
         for module in self.objectives:
@@ -119,8 +130,12 @@ class Evaluator:
         if self._all is None:
             raise ValueError("nothing was scored yet")
         matrix = np.array([np.frombuffer(key) for key in self._places])
-        order = np.lexsort(np.nan_to_num(matrix, nan=0.0, posinf=np.inf).T[::-1])
+        order = np.lexsort(np.nan_to_num(self.deciding(matrix), nan=0.0, posinf=np.inf).T[::-1])
         return matrix[order], pick(self._all, order)
+
+    def deciding(self, matrix: Floats) -> Floats:
+        """Return what decides between equals, (designs, columns), the first column first."""
+        return matrix
 
 
 def pick(scores: Scores, which: NDArray[np.int64] | NDArray[np.bool_]) -> Scores:

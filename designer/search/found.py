@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,7 +12,8 @@ from designer.brief.model import Brief
 from designer.objective.modules import ObjectiveModule
 from designer.objective.table import Designs
 from designer.search.conflict import failing_patterns, find_clashes, least_sums
-from designer.search.evaluate import Evaluator, designs_of, pick
+from designer.search.evaluate import Evaluator, pick
+from designer.search.looks import Sets
 from designer.search.progress import Progress
 from designer.search.ranking import Leaders, absorb, rows_of
 from designer.search.refine import GENERATIONS, POPULATION, STARTS, TIDIED, TIDIER, refine, tidy_designs
@@ -30,7 +31,7 @@ class Found:
     """Designs worth remembering."""
 
     leaders: Leaders
-    designs: Callable[[NDArray[np.int64]], Designs]
+    designs: Callable[[NDArray[np.int64]], Designs | Sets]
     """From the numbers in `leaders` to constants."""
     evaluations: int
     certificate: Certificate | None
@@ -38,6 +39,8 @@ class Found:
     method: str
     """ "scan" or "study"."""
     notes: tuple[str, ...]
+    alone: Mapping[str, float] = field(default_factory=dict)
+    """Of several jumps, by name, the lowest cost that each could have by itself."""
 
     def because(self, reason: str) -> Found:
         """Return the same with the reason for the study said first."""
@@ -70,8 +73,18 @@ def by_study(
     progress: Progress,
 ) -> Found:
     """Let Optuna search and SciPy refine; all designs that they tried are ranked like a scan's."""
-    expected = trials + STARTS * POPULATION * GENERATIONS + TIDIED * TIDIER
-    evaluator = Evaluator(brief, space, objectives, workers, expected)
+    evaluator = Evaluator(brief, space, objectives, workers, expected(trials))
+    return study_with(evaluator, seed=seed, trials=trials, progress=progress)
+
+
+def expected(trials: int) -> int:
+    """Return about how many designs a study and its refinement score."""
+    return trials + STARTS * POPULATION * GENERATIONS + TIDIED * TIDIER
+
+
+def study_with(evaluator: Evaluator, *, seed: int, trials: int, progress: Progress) -> Found:
+    """Let Optuna search and SciPy refine what an evaluator scores."""
+    brief, space = evaluator.brief, evaluator.space
     said = [run_study(evaluator, seed=seed, trials=trials, progress=progress)]
     said.append(refine(evaluator, seed=seed, progress=progress))
     tidy = np.zeros((0, len(space.axes)))
@@ -84,8 +97,8 @@ def by_study(
         # Only tidy designs are proposed: what costs a hair less is the same with figures that nobody can say.
         keep = (matrix[:, None, :] == tidy[None, :, :]) | (np.isnan(matrix)[:, None, :] & np.isnan(tidy))
         keep = keep.all(axis=2).any(axis=1)
-    designs = designs_of(matrix[keep])
-    rows = rows_of(pick(scores, keep), np.flatnonzero(keep), only_numbers(brief, designs), cells_of(designs))
+    designs = evaluator.designs(matrix[keep])
+    rows = rows_of(pick(scores, keep), np.flatnonzero(keep), _numbers(brief, designs), _cells(designs))
     leaders = absorb(Leaders(), rows)
     if len(tidy):
         untidy = float(np.min(scores.cost[scores.feasible]))
@@ -99,10 +112,25 @@ def by_study(
         )
     return Found(
         leaders,
-        lambda numbers: designs_of(matrix[numbers]),
+        lambda numbers: evaluator.designs(matrix[numbers]),
         evaluator.count,
         None,
         clashes,
         "study",
         tuple(said),
     )
+
+
+def _numbers(brief: Brief, designs: Designs | Sets) -> NDArray[np.bool_]:
+    """Return which designs keep today's step and grain."""
+    if isinstance(designs, Designs):
+        return only_numbers(brief, designs)
+    return only_numbers(brief.view(brief.jumps[0].name), designs.each[0])
+
+
+def _cells(designs: Designs | Sets) -> NDArray[np.int64]:
+    """Return one number for the cell in which designs lie; those of a cell look alike to a designer."""
+    if isinstance(designs, Designs):
+        return cells_of(designs)
+    each = np.column_stack([cells_of(one) for one in designs.each])
+    return np.unique(each, axis=0, return_inverse=True)[1].reshape(-1).astype(np.int64)

@@ -3,21 +3,29 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from designer.brief.model import Brief, Loop
-from designer.motion.closed_form import has_closed_form
-from designer.motion.rule import Constants
 from designer.objective.judge import judge
 from designer.objective.modules import ObjectiveModule
-from designer.objective.score import score
-from designer.objective.table import Designs, design_tables
+from designer.objective.table import Designs
 from designer.objective.verdict import Verdict
 from designer.search.found import Found
-from designer.search.ranking import Leaders, Rows, join
+from designer.search.looks import (
+    Set,
+    Sets,
+    cost_without_grain,
+    first_of,
+    judged_set,
+    look_names,
+    looks_of,
+    named_set,
+    steps_all,
+    today_of,
+)
+from designer.search.ranking import STEADY_WITHIN, Leaders, Rows, join
 from designer.search.result import Candidate, SearchResult
 from designer.search.shortlist import FEWEST, LOOKS, NOTICED, Options, Pick, against, choose, differs, trade
 
@@ -26,22 +34,21 @@ if TYPE_CHECKING:
 
 POOL = 2000
 """So many of the pool, the cheapest, are compared in what a designer notices."""
-STEADY_WITHIN = 2.0
-"""Where nothing is on target, the steadiest up to so many times the best cost is shown."""
 LUCKY = 1.05
 """Rounding that saves this share of the cost by chance is mentioned."""
 
 
-def change_of(brief: Brief, constants: Constants) -> str:
+def change_of(brief: Brief, constants: Set) -> str:
     """Return what a build must change: "none", "numbers" or "code"; "new" where the brief has no today."""
-    today = brief.today
+    today = today_of(brief)
     if today is None:
         return "new"
     if constants == today:
         return "none"
-    same = constants.grain == today.grain
+    shared, now = first_of(constants), first_of(today)
+    same = shared.grain == now.grain
     if brief.loop is Loop.FIXED:
-        same = same and constants.step == today.step
+        same = same and shared.step == now.step
     return "numbers" if same else "code"
 
 
@@ -63,29 +70,27 @@ class _Proposals:
 
     def __init__(self, brief: Brief, found: Found, objectives: Sequence[ObjectiveModule]) -> None:
         self.brief, self.found, self.objectives = brief, found, objectives
-        self._judged: dict[tuple[Constants, bool], Verdict] = {}
+        self._judged: dict[tuple[Set, bool], Verdict] = {}
 
-    def verdict(self, constants: Constants, *, bands: bool) -> Verdict:
+    def verdict(self, constants: Set, *, bands: bool) -> Verdict:
         if (constants, True) in self._judged:
             return self._judged[constants, True]
         if (constants, bands) not in self._judged:
             # Bands take hundreds of rates a candidate: in plain Python that would be the longest part.
-            steps_all = not bool(np.all(has_closed_form(self.brief.rule, np.array([constants.grain]))))
+            stepped = steps_all(self.brief, constants)
             self._judged[constants, bands] = judge(
                 self.brief,
                 constants,
                 bands=bands,
-                compiled=True if steps_all and bands else None,
+                compiled=True if stepped and bands else None,
                 objectives=self.objectives,
             )
         return self._judged[constants, bands]
 
-    def candidate(
-        self, constants: Constants, label: str | None, why: str, *, bands: bool = True
-    ) -> Candidate:
+    def candidate(self, constants: Set, label: str | None, why: str, *, bands: bool = True) -> Candidate:
         return Candidate(label, why, change_of(self.brief, constants), self.verdict(constants, bands=bands))
 
-    def constants(self, rows: Rows, at: int = 0) -> Constants:
+    def constants(self, rows: Rows, at: int = 0) -> Set:
         return self.found.designs(rows.index).constants(at, self.brief)
 
     def shortlist(self) -> tuple[list[Candidate], list[str]]:
@@ -101,7 +106,9 @@ class _Proposals:
         _, first = np.unique(rows.index, return_index=True)
         rows = rows.take(first)  # ascending in index from here on
         designs = self.found.designs(rows.index)
-        options = Options(self._looks(designs), rows.miss, rows.spread, rows.cost, rows.on_target)
+        names = look_names(self.brief)
+        looks = looks_of(self.brief, designs)
+        options = Options(looks, rows.miss, rows.spread, rows.cost, rows.on_target, names)
 
         def places(part: Rows) -> NDArray[np.int64]:
             return np.asarray(np.searchsorted(rows.index, part.index), dtype=np.int64)
@@ -117,16 +124,9 @@ class _Proposals:
         apart = _apart(options.looks, [pick.option for pick in picks])
         return listed, self._remarks(apart, bool(len(leaders.numbers)))
 
-    def _looks(self, designs: Designs) -> NDArray[np.float64]:
-        """Return what a designer notices of each design, (designs, 6); measures of the first jump."""
-        table = design_tables(self.brief, designs)[0]
-        columns = [
-            table.measures[name].nominal if name in table.measures else getattr(designs, name)
-            for name in LOOKS
-        ]
-        return np.asarray(np.nan_to_num(np.column_stack(columns)), dtype=np.float64)
-
-    def _why(self, options: Options, pick: Pick, best: int, reasons: Sequence[str], designs: Designs) -> str:
+    def _why(
+        self, options: Options, pick: Pick, best: int, reasons: Sequence[str], designs: Designs | Sets
+    ) -> str:
         one = pick.option
         parts = list(reasons)
         if pick.reason == "front":
@@ -140,12 +140,12 @@ class _Proposals:
             why += f": {against(options, one, best)}"
         return why + self._luck(designs, one, float(options.cost[one]))
 
-    def _luck(self, designs: Designs, one: int, cost: float) -> str:
+    def _luck(self, designs: Designs | Sets, one: int, cost: float) -> str:
         """Say where rounding cancels an error by chance: the same constants cost more without it."""
-        if not designs.grain[one] or self.objectives:
+        constants = designs.constants(one, self.brief)
+        if not first_of(constants).grain or self.objectives:
             return ""
-        bare = Designs.of([replace(designs.constants(one, self.brief), grain=0.0)])
-        without = float(score(self.brief, design_tables(self.brief, bare)).cost[0])
+        without = cost_without_grain(self.brief, constants)
         if not without > LUCKY * cost:
             return ""
         spared = f"with grain 0 the same numbers would cost {without:.3g}, not {cost:.3g}"
@@ -155,10 +155,10 @@ class _Proposals:
         said = []
         if count < FEWEST:
             said.append(
-                f"Fewer than {FEWEST} candidates differ by more than {NOTICED:.0%} in "
-                f"{', '.join(LOOKS[:-1])} or {LOOKS[-1]}: nothing else that is nearly as good does."
+                f"Fewer than {FEWEST} candidates differ by more than {NOTICED:.0%} in {self._noticed()}: "
+                "nothing else that is nearly as good does."
             )
-        if self.brief.today is not None and not has_numbers:
+        if today_of(self.brief) is not None and not has_numbers:
             nothing = (
                 "Nothing that this search may use" if self.found.certificate else "Nothing that was tried"
             )
@@ -167,6 +167,12 @@ class _Proposals:
                 "numbers only."
             )
         return said
+
+    def _noticed(self) -> str:
+        if not self.brief.several:
+            return f"{', '.join(LOOKS[:-1])} or {LOOKS[-1]}"
+        own = [name for name in LOOKS if name != "gravity"]
+        return f"gravity, or in {', '.join(own[:-1])} or {own[-1]} of a jump"
 
 
 def _apart(looks: NDArray[np.float64], picks: Sequence[int]) -> int:
@@ -199,14 +205,17 @@ def propose(
         rows = leaders.infeasible
         why = f"nothing fulfils every demand; nearest to all of them: {_short(rows)}"
         nearest = make.candidate(make.constants(rows), None, why)
-    named = {candidate.verdict.constants: candidate for candidate in shortlist}
+    named = {judged_set(candidate.verdict): candidate for candidate in shortlist}
     front = []
     for k in range(len(leaders.front)):
         constants = make.constants(leaders.front, k)
         why = "not dominated in miss and rate spread"
         front.append(named.get(constants) or make.candidate(constants, None, why, bands=False))
-    today = None if brief.today is None else make.candidate(brief.today, None, "what the build has now")
-    sets = tuple(make.candidate(one.constants, one.name, "brought along in [[sets]]") for one in brief.sets)
+    now = today_of(brief)
+    today = None if now is None else make.candidate(now, None, "what the build has now")
+    sets = tuple(
+        make.candidate(named_set(brief, one), one.name, "brought along in [[sets]]") for one in brief.sets
+    )
     return SearchResult(
         best=best,
         nearest=nearest,
@@ -220,6 +229,7 @@ def propose(
         method=found.method,
         notes=(*notes, *found.notes, *remarks),
         clashes=found.clashes,
+        alone=found.alone,
     )
 
 

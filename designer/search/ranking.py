@@ -25,6 +25,8 @@ NEARLY_AS_GOOD = 1.5
 """A design off target counts as nearly as good as the best up to so many times its cost."""
 ON_TARGET_SLACK = 1.0
 """A design on target counts as nearly as good up to so many tolerances more in cost."""
+STEADY_WITHIN = 2.0
+"""Where nothing is on target, the steadiest up to so many times the best cost is shown."""
 CELL = 1.025
 """Designs whose constants all lie within this factor share a cell of the pool, which keeps the cheapest."""
 

@@ -7,7 +7,6 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from designer.motion.rule import SEARCHABLE
 from designer.search.evaluate import DIGITS, INFEASIBLE, Evaluator, figures, penalised, significant
 from designer.search.progress import Progress, Silent
 from designer.search.space import Axis
@@ -168,7 +167,8 @@ def _worth_tidying(evaluator: Evaluator) -> Floats:
     """
     matrix, scores = evaluator.everything()
     ranks = penalised(scores)
-    coarse = np.nan_to_num(matrix[:, [SEARCHABLE.index("step"), SEARCHABLE.index("grain")]])
+    kinds = [k for k, axis in enumerate(evaluator.space.axes) if axis.name in ("step", "grain")]
+    coarse = np.nan_to_num(matrix[:, kinds])
     _, group = np.unique(coarse, axis=0, return_inverse=True)
     group = group.reshape(-1)
     each = max(STARTS, TIDIED // (int(group.max()) + 1))
@@ -194,4 +194,4 @@ def tidy_designs(evaluator: Evaluator, progress: Progress | None = None) -> Floa
     for k, row in enumerate(rows):
         tidy.append(_tidied(evaluator, row))
         progress.update("Finding tidy numbers", k + 1, len(rows))
-    return np.array(tidy).reshape(-1, len(SEARCHABLE))
+    return np.array(tidy).reshape(-1, len(evaluator.space.axes))

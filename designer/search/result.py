@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
 
 from designer.motion.rule import Constants
 from designer.objective.verdict import Verdict
@@ -24,7 +25,8 @@ class Candidate:
 class RunnerUp:
     """The second best of a certified grid."""
 
-    constants: Constants
+    constants: Constants | tuple[Constants, ...]
+    """Of several jumps one each."""
     cost: float
     violation: float
 
@@ -36,9 +38,10 @@ class Certificate:
     kind: str
     """ "grid"."""
     method: str
-    """ "enumerated"."""
+    """ "enumerated", or "separated": jumps measured one by one, their sums put together."""
     grid_points: int
     evaluated: int
+    """Designs measured; with several jumps those of each jump are counted, not their combinations."""
     complete: bool
     grid_hash: str
     runner_up: RunnerUp | None
@@ -79,3 +82,9 @@ class SearchResult:
     notes: tuple[str, ...]
     """What ran and why, what was left out, in sentences."""
     clashes: tuple[Clash, ...]
+    alone: Mapping[str, float] = field(default_factory=dict)
+    """Of several jumps, by name, the lowest cost that each could have alone in this search: JumpVerdict.cost
+    less this is what a jump pays for the others. Without the jumps that nothing makes feasible alone."""
+    findings: tuple[str, ...] = ()
+    """Of several jumps, a sentence on each that the best (or nearest) set leaves out of tolerance: who pulls
+    the other way, and what would do. Empty for one jump."""

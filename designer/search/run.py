@@ -3,15 +3,22 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 from designer.brief.model import Brief
 from designer.errors import Fault, InputError
 from designer.objective.modules import ObjectiveModule
+from designer.objective.rows import binding
+from designer.search.findings import find_out
 from designer.search.found import Found, by_scan, by_study
+from designer.search.overdetermined import overdetermined
 from designer.search.progress import Progress, Silent
 from designer.search.propose import propose
 from designer.search.result import SearchResult
 from designer.search.scan import plan, steps_to_simulate
+from designer.search.several.assign import build_several
+from designer.search.several.found import by_separated_scan, by_several_study
+from designer.search.several.found import reason_to_study as several_reason
 from designer.search.space import Space, build_space
 
 RATES_PER_DESIGN = 10
@@ -73,14 +80,46 @@ def search(
     [search], or does not bound a free constant.
     """
     _check(workers, trials, budget)
-    space = build_space(brief)
     listen = progress or Silent()
-    reason = reason_to_study(brief, space, budget, objectives)
+    deciding = binding(brief)  # of a long level list only the rows that decide need to be scored
     found: Found
-    if reason is None:
-        found = by_scan(brief, space, workers=workers, progress=listen)
+    if brief.several:
+        several = build_several(deciding)
+        notes = several.notes
+        reason = several_reason(deciding, several, budget, objectives)
+        if reason is None:
+            found = by_separated_scan(deciding, several, workers=workers, progress=listen)
+        else:
+            found = by_several_study(
+                deciding,
+                several,
+                seed=seed,
+                trials=trials,
+                objectives=objectives,
+                workers=workers,
+                progress=listen,
+            ).because(reason)
     else:
-        found = by_study(
-            brief, space, seed=seed, trials=trials, objectives=objectives, workers=workers, progress=listen
-        ).because(reason)
-    return propose(brief, found, seed=seed, objectives=objectives, notes=space.notes)
+        space = build_space(deciding)
+        notes = space.notes
+        reason = reason_to_study(deciding, space, budget, objectives)
+        if reason is None:
+            found = by_scan(deciding, space, workers=workers, progress=listen)
+        else:
+            found = by_study(
+                deciding,
+                space,
+                seed=seed,
+                trials=trials,
+                objectives=objectives,
+                workers=workers,
+                progress=listen,
+            ).because(reason)
+    return told(brief, propose(brief, found, seed=seed, objectives=objectives, notes=notes))
+
+
+def told(brief: Brief, result: SearchResult) -> SearchResult:
+    """Return a result with what can be said of its aims and, of several jumps, of who pays for whom."""
+    found = result.best or result.nearest
+    findings = () if found is None else find_out(brief, found.verdict)
+    return replace(result, notes=(*overdetermined(brief), *result.notes), findings=findings)

@@ -26,7 +26,7 @@ LEAST_GAIN = 0.03
 
 @dataclass(frozen=True, slots=True)
 class Options:
-    """Designs that may be shortlisted, arrays (designs,), and looks (designs, 6) in the order of LOOKS."""
+    """Designs that may be shortlisted, arrays (designs,), and looks (designs, names)."""
 
     looks: Floats
     miss: Floats
@@ -34,6 +34,8 @@ class Options:
     cost: Floats
     on_target: NDArray[np.bool_]
     """Whether nothing is beyond its tolerance."""
+    names: tuple[str, ...] = LOOKS
+    """What each look is: one of LOOKS, of several jumps with its jump, "walk.apex"."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,14 +66,14 @@ def hypervolume(points: Floats, reference: tuple[float, float]) -> float:
 
 
 def differences(looks: Floats, other: Floats) -> Floats:
-    """Return relative differences of looks (…, 6), in parts of the larger; 0 where both are 0 or unknown."""
+    """Return relative differences of looks (…, names), in parts of the larger; 0 where both are 0 or none."""
     size = np.maximum(np.abs(looks), np.abs(other))
     with np.errstate(invalid="ignore", divide="ignore"):
         return np.nan_to_num(np.abs(looks - other) / size)
 
 
 def differs(looks: Floats, others: Floats) -> NDArray[np.bool_]:
-    """Return which designs, looks (designs, 6), a designer could tell from every one of others (m, 6)."""
+    """Return which designs, looks (designs, names), a designer could tell from all of others (m, names)."""
     apart = differences(looks[:, None, :], others[None, :, :]).max(axis=2)
     return np.asarray((apart > NOTICED).all(axis=1))
 
@@ -128,7 +130,8 @@ def against(options: Options, one: int, best: int, most: int = 2) -> str:
     told = []
     for k in np.argsort(-apart, kind="stable")[:most]:
         if apart[k] > NOTICED and other[k] != 0.0:
-            words = _MORE_LESS[LOOKS[k]][int(mine[k] < other[k])]
+            jump, _, name = options.names[k].rpartition(".")
+            words = _MORE_LESS[name][int(mine[k] < other[k])] + (f" of {jump}" if jump else "")
             told.append(f"{100.0 * abs(mine[k] / other[k] - 1.0):.0f} % {words}")
     cost, least = float(options.cost[one]), float(options.cost[best])
     if cost == least:

@@ -105,7 +105,8 @@ def _default(brief: Brief, name: str) -> float | None:
     return NONE_SAID.get(name)
 
 
-def _axis(name: str, choice: Choice) -> Axis:
+def axis_of(name: str, choice: Choice) -> Axis:
+    """Return the axis that a choice with points or bounds makes."""
     if choice.values is not None:
         return Axis(name, choice.values, choice.values[0], choice.values[-1])
     if choice.low is None or choice.high is None:
@@ -150,4 +151,4 @@ def build_space(brief: Brief) -> Space:
     Raises InputError where there is no [search], or where the targets do not bound a free constant.
     """
     choices, notes = derive_free(brief, _choices(brief))
-    return Space(tuple(_axis(name, choices[name]) for name in SEARCHABLE), notes)
+    return Space(tuple(axis_of(name, choices[name]) for name in SEARCHABLE), notes)

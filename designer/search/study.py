@@ -10,7 +10,6 @@ import numpy as np
 
 from designer.search.evaluate import Evaluator, penalised
 from designer.search.progress import Progress, Silent
-from designer.search.seeds import seeds
 from designer.search.space import Axis, Space
 
 if TYPE_CHECKING:
@@ -45,7 +44,7 @@ def _place(axis: Axis, value: float) -> float | int:
 
 
 def _suggest(trial: optuna.Trial, space: Space) -> list[float]:
-    """Return the constants that the sampler suggests, in SEARCHABLE's order."""
+    """Return what the sampler suggests, in the order of the axes."""
     row = []
     for axis in space.axes:
         if axis.is_fixed:
@@ -60,7 +59,7 @@ def _suggest(trial: optuna.Trial, space: Space) -> list[float]:
 def _enqueue(study: optuna.Study, evaluator: Evaluator) -> int:
     """Queue the seeds, each design once, and return how many there are."""
     space = evaluator.space
-    start = evaluator.tidy(seeds(evaluator.brief, space))
+    start = evaluator.tidy(evaluator.starts())
     queued: set[tuple[float, ...]] = set()
     for row in np.nan_to_num(start, nan=0.0, posinf=np.inf).tolist():
         if tuple(row) in queued:
