@@ -57,7 +57,7 @@ def test_the_overview_starts_light() -> None:
 
 
 @pytest.mark.parametrize("name", ["night-market-courier", "low-gravity-salvage", "rhythm-hopper",
-                                  "heavy-knight", "tile-platformer"])  # fmt: skip
+                                  "heavy-knight", "tile-platformer", "harbour-crew"])  # fmt: skip
 def test_check_starts_light(name: str) -> None:
     loaded = modules_after(f"from designer.cli import main; main(['check', 'objectives/{name}.toml'])")
     assert "numpy" in loaded  # or the command did not run at all
@@ -85,7 +85,7 @@ def test_search_is_a_function_whatever_was_imported_before() -> None:
         run = subprocess.run(
             [sys.executable, "-c", script], capture_output=True, text=True, cwd=ROOT, check=False
         )
-        assert "'NoneType' object has no attribute 'search'" in run.stderr, run.stderr
+        assert "'NoneType' object has no attribute" in run.stderr, run.stderr
 
 
 def test_every_public_name_is_there() -> None:

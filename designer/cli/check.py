@@ -6,6 +6,8 @@ from pathlib import Path
 
 import click
 
+from designer.cli.options import objective_option
+
 
 @click.command("check")
 @click.argument("source", metavar="BRIEF|RESULT", type=click.Path(path_type=Path))
@@ -15,14 +17,7 @@ import click
 @click.option(
     "--pick", metavar="SET", help="Which set: today, a label such as B, a mark, or a name of [[sets]]."
 )
-@click.option(
-    "--objective",
-    "objective_paths",
-    metavar="FILE",
-    multiple=True,
-    type=click.Path(path_type=Path),
-    help="Count the terms of a Python file too. This runs the file.",
-)
+@objective_option
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON document and nothing else.")
 def command(
     source: Path,
@@ -40,19 +35,22 @@ def command(
     from designer.objective.modules import load_objective
 
     brief, document = open_source(source)
-    name, constants = pick_set(source, brief, document, pick, settings)
+    name, sets = pick_set(source, brief, document, pick, settings)
     objectives = [load_objective(path) for path in objective_paths]
     if terms_of(document) and not objectives:
         note = "The search counted terms of an objective module; name it with --objective to count them here."
         click.echo(note, err=True)
     # Plain Python throughout: most checks are done before a compiler would be loaded.
-    verdict = judge(brief, constants, compiled=False, objectives=objectives)
+    verdict = judge(brief, sets, compiled=False, objectives=objectives)
     if as_json:
         from designer.report.document import to_json, verdict_document
 
         click.echo(to_json(verdict_document(verdict)), nl=False)
     else:
         from designer.report.tables import print_check
+        from designer.search.overdetermined import overdetermined
 
         print_check(brief, name, verdict)
+        for words in overdetermined(brief):
+            click.echo(words)
     return 0 if verdict.feasible else 1

@@ -6,9 +6,20 @@ from pathlib import Path
 
 import click
 
+from designer.cli.options import objective_option
+
 
 @click.command("search")
-@click.argument("brief_path", metavar="BRIEF", type=click.Path(path_type=Path))
+@click.argument("brief_path", metavar="BRIEF|RESULT", type=click.Path(path_type=Path))
+@click.option(
+    "--from", "start", metavar="SET", help="Hold from this set: today, a label such as B, a mark, a name."
+)
+@click.option(
+    "--hold", metavar="MEASURE", multiple=True, help="Aim at what this measure is for the set of --from."
+)
+@click.option(
+    "--set", "settings", metavar="MEASURE=VALUE", multiple=True, help="Aim a measure at this value instead."
+)
 @click.option(
     "--seed", default=0, show_default=True, type=click.IntRange(min=0), help="Seed of all randomness."
 )
@@ -25,14 +36,7 @@ import click
     type=click.IntRange(min=1),
     help="Largest grid that is scanned point by point; beyond it a study searches.",
 )
-@click.option(
-    "--objective",
-    "objective_paths",
-    metavar="FILE",
-    multiple=True,
-    type=click.Path(path_type=Path),
-    help="Add the terms of a Python file. This runs the file.",
-)
+@objective_option
 @click.option(
     "--out",
     default="results",
@@ -44,6 +48,9 @@ import click
 @click.option("--json", "as_json", is_flag=True, help="Print one JSON document and nothing else.")
 def command(
     brief_path: Path,
+    start: str | None,
+    hold: tuple[str, ...],
+    settings: tuple[str, ...],
     seed: int,
     workers: int | None,
     trials: int,
@@ -59,14 +66,17 @@ def command(
     """
     import os
 
-    from designer.brief.reading import read_brief
+    from designer.cli.held import open_job
     from designer.cli.progress import shown
     from designer.objective.modules import load_objective
     from designer.report.results import write_results
+    from designer.search.overdetermined import overdetermined
     from designer.search.run import search
 
-    brief = read_brief(brief_path)
-    source = brief_path.read_bytes()
+    job = open_job(brief_path, out, start, hold, settings)
+    brief = job.brief
+    for words in (*job.said, *overdetermined(brief)):
+        click.echo(words, err=True)
     objectives = [load_objective(path) for path in objective_paths]
     with shown(not as_json) as progress:
         result = search(
@@ -78,7 +88,7 @@ def command(
             objectives=objectives,
             progress=progress,
         )
-        folder = write_results(brief, source, result, out, pictures=pictures, progress=progress)
+        folder = write_results(brief, job.files, result, out, pictures=pictures, progress=progress)
     if as_json:
         from designer.report.document import search_document, to_json
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import fields, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -46,18 +46,19 @@ def open_source(path: Path) -> tuple[Brief, dict[str, Any] | None]:
 
 def pick_set(
     path: Path, brief: Brief, document: dict[str, Any] | None, pick: str | None, settings: Sequence[str]
-) -> tuple[str, Constants]:
-    """Return the name of the wanted set and its constants, with --set values in place of its own.
+) -> tuple[str, tuple[Constants, ...]]:
+    """Return the name of the wanted set and its constants, one a jump, with --set values in place of its own.
 
     Without a pick it is today's set, or of a result the best (the nearest where nothing is feasible). Raises
     InputError where there is no such set.
     """
-    from designer.brief.settings import with_settings
+    from designer.brief.settings import set_with_settings
 
-    names = {one.name: one.constants for one in brief.sets}
-    if brief.today is not None:
-        names["today"] = brief.today
-    marks: dict[str, Constants] = {}
+    names = {one.name: one.jumps or (one.constants,) for one in brief.sets}
+    today = today_of(brief)
+    if today is not None:
+        names["today"] = today
+    marks: dict[str, tuple[Constants, ...]] = {}
     for label, mark, constants in _candidates(document):
         marks.setdefault(mark, constants)
         if label:
@@ -67,14 +68,34 @@ def pick_set(
         usual = ("A", "nearest") if document is not None else ()
         pick = next((name for name in usual if name in names), "today")
         if pick not in names:
-            return "set", with_settings(brief, brief.base, settings)
+            base = [jump.base for jump in brief.jumps] if brief.several else [brief.base]
+            return "set", set_with_settings(brief, base, settings)
     alike = [name for name in (*names, *marks) if name.lower() == pick.lower()]
     if not alike:
         raise _unknown(path, brief, pick, list(names), document is None)
     name = alike[0]
     constants = names[name] if name in names else marks[name]
     shown = next((one for one, same in names.items() if same == constants), name)
-    return f"{shown} with changes" if settings else shown, with_settings(brief, constants, settings)
+    return f"{shown} with changes" if settings else shown, set_with_settings(brief, constants, settings)
+
+
+def today_of(brief: Brief) -> tuple[Constants, ...] | None:
+    """Return today's set, one Constants a jump; None where a jump has none."""
+    if not brief.several:
+        return None if brief.today is None else (brief.today,)
+    today = tuple(jump.today for jump in brief.jumps if jump.today is not None)
+    return today if len(today) == len(brief.jumps) else None
+
+
+def set_of(candidate: Mapping[str, Any]) -> tuple[Constants, ...]:
+    """Return the constants, one a jump, of a candidate of candidates.json."""
+    from designer.motion.rule import Constants
+
+    known = {field.name for field in fields(Constants)}
+    return tuple(
+        Constants(**{key: value for key, value in jump["constants"].items() if key in known})
+        for jump in candidate["jumps"]
+    )
 
 
 def _unknown(path: Path, brief: Brief, pick: str, names: list[str], is_brief: bool) -> InputError:
@@ -86,21 +107,18 @@ def _unknown(path: Path, brief: Brief, pick: str, names: list[str], is_brief: bo
     return InputError(Fault(place=str(path), field="--pick", value=pick, allowed=allowed, fix=fix))
 
 
-def _candidates(document: dict[str, Any] | None) -> Iterator[tuple[str | None, str, Constants]]:
-    """Yield label (None where it has none), mark and constants of every candidate of a results file."""
-    from designer.motion.rule import Constants
-
+def _candidates(
+    document: dict[str, Any] | None,
+) -> Iterator[tuple[str | None, str, tuple[Constants, ...]]]:
+    """Yield label (None where it has none), mark and set of every candidate of a results file."""
     if document is None:
         return
-    known = {field.name for field in fields(Constants)}
-    listed = [
-        (one["label"], one) for part in ("shortlist", "sets", "front") for one in document.get(part) or []
-    ]
+    parts = ("shortlist", "sets", "front")
+    listed = [(one["label"], one) for part in parts for one in document.get(part) or []]
     if document.get("nearest"):
         listed.append(("nearest", document["nearest"]))
     for label, one in listed:
-        values = {key: value for key, value in one["constants"].items() if key in known}
-        yield label, one["mark"], Constants(**values)
+        yield label, one["mark"], set_of(one)
 
 
 def terms_of(document: dict[str, Any] | None) -> bool:

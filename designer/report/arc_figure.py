@@ -9,7 +9,7 @@ import numpy as np
 from matplotlib.collections import LineCollection
 from matplotlib.patches import Rectangle
 
-from designer.analysis.arcs import Arc, GapShape, LedgeShape, Scene
+from designer.analysis.arcs import Arc, BlockShape, CeilingShape, GapShape, LedgeShape, Scene
 from designer.report import labels, style
 from designer.report.figures import head, name_axes
 from designer.report.style import Look
@@ -17,7 +17,8 @@ from designer.report.style import Look
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-WORDS = {"reach": "reach", "cross": "cross", "stay-out": "stay out"}
+WORDS = {"stay-out": "stay out", "stay-under": "stay under"}
+"""How demands read where they are more than the word itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +47,16 @@ class ArcPicture:
 
 def arcs(ax: Axes, picture: ArcPicture) -> Axes:
     """Draw one line a rate over the ledges and gaps, x and y to one scale where x is a distance."""
+    stage(ax, picture)
+    _paths(ax, picture)
+    _enlarge(ax, picture)
+    head(ax, picture.title, picture.subtitle, small=picture.small)
+    names(ax, picture)
+    return ax
+
+
+def stage(ax: Axes, picture: ArcPicture) -> None:
+    """Draw the axes, the ground and every feature."""
     scene = picture.scene
     ax.set_xlim(*picture.x_range)
     ax.set_ylim(*picture.y_range)
@@ -57,13 +68,12 @@ def arcs(ax: Axes, picture: ArcPicture) -> Axes:
         _ledge(ax, ledge)
     for gap in scene.gaps:
         _far_side(ax, gap, picture)
-    _paths(ax, picture)
-    _enlarge(ax, picture)
+    for block in scene.blocks:
+        _block(ax, block)
+    for ceiling in scene.ceilings:
+        _ceiling(ax, ceiling, picture.thickness)
     run = f"distance run ({picture.unit})" if scene.by_distance else "time since launch (s)"
     name_axes(ax, run, f"height ({picture.unit})")
-    head(ax, picture.title, picture.subtitle, small=picture.small)
-    _names(ax, picture)
-    return ax
 
 
 def _paths(ax: Axes, picture: ArcPicture) -> None:
@@ -130,14 +140,7 @@ def _box(x: float, y: float, width: float, height: float, must: str) -> Rectangl
 
 def _ledge(ax: Axes, ledge: LedgeShape) -> None:
     """Draw a ledge: a line over the arcs, cased in white, and a thin one from it to its name."""
-    ax.plot(
-        [ledge.x_to, ax.get_xlim()[1]],
-        [ledge.height, ledge.height],
-        color=style.QUIET,
-        linewidth=0.6,
-        linestyle=(0, (1, 2)),
-        zorder=1.4,
-    )
+    _leader(ax, ledge.x_to, ledge.height)
     ends = ([ledge.x_from, ledge.x_to], [ledge.height, ledge.height])
     ax.plot(*ends, color=style.PAPER, linewidth=4.0, solid_capstyle="butt", zorder=2.65)
     ax.plot(
@@ -176,14 +179,39 @@ def _far_side(ax: Axes, gap: GapShape, picture: ArcPicture) -> None:
         )
 
 
-def _names(ax: Axes, picture: ArcPicture) -> None:
-    """Name ledges and gaps in a column at the right, at their heights."""
+def _block(ax: Axes, block: BlockShape) -> None:
+    """Draw a block as it stands there, and a thin line from its top to its name."""
+    _leader(ax, block.x_to, block.height)
+    box = _box(block.x_from, 0.0, block.length, block.height, block.must)
+    if block.must == "clear":
+        # Jumps that need not clear it are drawn across it, and must be seen.
+        box.set(facecolor=style.FAINT, zorder=1.5)
+    ax.add_patch(box)
+
+
+def _ceiling(ax: Axes, ceiling: CeilingShape, thickness: float) -> None:
+    """Draw what the feet must stay under: an open box over it, hatched where the body would hit."""
+    _leader(ax, ceiling.x_to, ceiling.feet)
+    box = _box(ceiling.x_from, ceiling.feet, ceiling.x_to - ceiling.x_from, thickness, "stay-out")
+    box.set(hatch=style.HATCH, linestyle="solid", edgecolor=style.QUIET)
+    ax.add_patch(box)
+
+
+def _leader(ax: Axes, start: float, height: float) -> None:
+    """Draw a thin line from a feature to the column of names."""
+    ends = ([start, ax.get_xlim()[1]], [height, height])
+    ax.plot(*ends, color=style.QUIET, linewidth=0.6, linestyle=(0, (1, 2)), zorder=1.4)
+
+
+def names(ax: Axes, picture: ArcPicture) -> None:
+    """Name every feature in a column at the right, at its height."""
     scene = picture.scene
-    rows = [
-        labels.Row(x.height, f"{style.shorten(x.name)}\n{x.height:g}, {WORDS[x.must]}") for x in scene.ledges
-    ]
-    rows += [
-        labels.Row(x.far_level, f"{style.shorten(x.name)}\n{x.width:g} wide, {WORDS[x.must]}")
-        for x in scene.gaps
-    ]
-    labels.column(ax, rows)
+    rows = [(x.height, x.name, f"{x.height:g}, {_demand(x.must)}") for x in scene.ledges]
+    rows += [(x.far_level, x.name, f"{x.width:g} wide, {_demand(x.must)}") for x in scene.gaps]
+    rows += [(x.height, x.name, f"{x.height:g} × {x.length:g}, {_demand(x.must)}") for x in scene.blocks]
+    rows += [(x.feet, x.name, f"{x.height:g}: feet {_demand(x.must)} {x.feet:g}") for x in scene.ceilings]
+    labels.column(ax, [labels.Row(y, f"{style.shorten(name)}\n{words}") for y, name, words in rows])
+
+
+def _demand(must: str) -> str:
+    return WORDS.get(must, must)

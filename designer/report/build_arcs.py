@@ -26,7 +26,7 @@ def arc_panels(brief: Brief, views: Sequence[View]) -> list[ArcPicture]:
     if under is not None and any(scene.by_distance != under.by_distance for scene in full):
         under = None
     every = [*full, *([under] if under is not None else [])]
-    x_range, y_range = _scene_ranges(every)
+    x_range, y_range = scene_ranges(every)
     box = _inset_box(every)
     inset_y = _inset_heights(every)
     wide = _narrowest(every)
@@ -72,12 +72,14 @@ def _subtitle(rates: int, drawn: int, today: bool) -> str:
     return said + ("; grey: today" if today else "")
 
 
-def _scene_ranges(scenes: Sequence[Scene]) -> tuple[tuple[float, float], tuple[float, float]]:
+def scene_ranges(scenes: Sequence[Scene]) -> tuple[tuple[float, float], tuple[float, float]]:
     """Return one range of x and of y that holds every scene; jumps that never land are cut."""
     flown = [arc for scene in scenes for arc in scene.arcs if arc.lands]
     flown = flown or [arc for scene in scenes for arc in scene.arcs]
     wide = max([float(arc.x[-1]) for arc in flown] + [g.width for s in scenes for g in s.gaps])
     tops = [float(arc.y.max()) for arc in flown] + [ledge.height for s in scenes for ledge in s.ledges]
+    tops += [block.height for s in scenes for block in s.blocks]
+    tops += [ceiling.feet for s in scenes for ceiling in s.ceilings]
     low = min([0.0, *(gap.far_level for scene in scenes for gap in scene.gaps)])
     tall = max(tops) - low
     return (-0.07 * wide, 1.06 * wide), (low - 0.1 * tall, max(tops) + 0.08 * tall)

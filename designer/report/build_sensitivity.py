@@ -9,6 +9,7 @@ import numpy as np
 
 from designer.analysis.sensitivity import Nudge, one_increment
 from designer.brief.model import Brief
+from designer.report import style
 from designer.report.findings import plain
 from designer.report.score_figures import Bar
 from designer.report.shown import NEAREST
@@ -29,7 +30,7 @@ class SensitivityPicture:
 
 def sensitivity(brief: Brief, best: Candidate) -> SensitivityPicture | None:
     """Return the sensitivity of the best, or None where there is nothing to nudge."""
-    found = one_increment(brief, best.verdict.constants)
+    found = one_increment(brief, best.verdict.sets)
     if not found.nudges:
         return None
     labels = tuple(
@@ -38,7 +39,9 @@ def sensitivity(brief: Brief, best: Candidate) -> SensitivityPicture | None:
     columns = []
     several = len(best.verdict.jumps) > 1
     for index, change in enumerate(found.nudges[0].changes):
-        name = f"{change.jump} {change.measure}" if several else change.measure
+        name = change.measure
+        if several:
+            name = f"{style.shorten(change.jump, style.HEAD_WIDTH)}\n{change.measure}"
         values = [nudge.changes[index].in_tolerances for nudge in found.nudges]
         columns.append((name, _bars(labels, found.nudges, values)))
     columns.append(("miss", _bars(labels, found.nudges, [nudge.miss for nudge in found.nudges])))
@@ -57,8 +60,10 @@ def nudge_label(nudge: Nudge, unit: str) -> str:
     """Return "gravity 1600 → 1610 cm/s²", "step 10 → 11 ms"."""
     if nudge.share:
         return f"{nudge.constant} {'+' if nudge.direction > 0 else '−'}1 %"
-    measured = {"step": "ms", "gravity": f"{unit}/s²", "fall_factor": ""}.get(nudge.constant, f"{unit}/s")
-    before, after = (_value(nudge.constant, value) for value in (nudge.before, nudge.after))
+    constant = nudge.constant.rpartition(".")[2]  # of several jumps it is "walk.launch_speed"
+    plain_numbers = constant.endswith("_factor") or constant.endswith(" times")
+    measured = {"step": "ms", "gravity": f"{unit}/s²"}.get(constant, "" if plain_numbers else f"{unit}/s")
+    before, after = (_value(constant, value) for value in (nudge.before, nudge.after))
     measured = f" {measured}".rstrip()
     if np.isinf(nudge.after):
         return f"{nudge.constant} {before}{measured} → {after}"
@@ -103,4 +108,4 @@ def sensitivity_title(
     size, row, measure = max(steady, key=lambda item: item[0])
     nudge = nudges[row]
     what = f"1 % of {nudge.constant}" if nudge.share else f"one increment of {nudge.constant}"
-    return f"{name}: {what} moves {measure} by {plain(size, 2)} tolerances{said}"
+    return f"{name}: {what} moves {' '.join(measure.split())} by {plain(size, 2)} tolerances{said}"

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 
-from designer.brief.model import Gap, Ledge
+from designer.brief.model import Block, Feature, Gap
 from designer.motion.rule import Constants
 from designer.objective.verdict import FeatureVerdict
 from designer.report.words import NO_VALUE, number
@@ -46,8 +46,15 @@ def deviation_text(deviation: float | None) -> str:
     return text + ("!" if off else "")
 
 
-def spare_text(feature: Ledge | Gap, found: FeatureVerdict) -> str:
+def size_of(feature: Feature) -> float:
+    """Return what a feature's slack is measured against: a height, a width, the length of a block."""
+    if isinstance(feature, Gap):
+        return feature.width
+    return feature.length if isinstance(feature, Block) else feature.height
+
+
+def spare_text(feature: Feature, found: FeatureVerdict) -> str:
     """Return a feature's signed slack to a thousandth of its size, "!" where the demand does not hold."""
-    size = feature.height if isinstance(feature, Ledge) else feature.width
+    size = size_of(feature)
     places = max(0, 3 - math.floor(math.log10(size))) if size > 0.0 else 3
     return figure(found.spare, places, signed=True) + ("" if found.holds else "!")

@@ -7,14 +7,24 @@ from collections.abc import Sequence
 from rich.console import Group, RenderableType
 from rich.text import Text
 
-from designer.brief.model import Brief, Gap, Ledge, Target
+from designer.brief.model import Brief, Target
 from designer.motion.measures import unit_of
 from designer.motion.rule import Constants
-from designer.objective.verdict import RateRow, Verdict
+from designer.objective.rows import binding
+from designer.objective.score import views_of
+from designer.objective.verdict import FeatureVerdict, RateRow, Verdict
 from designer.report.cells import decimals, deviation_text, figure, spare_text
 from designer.report.grid import Column, Grid
 from designer.report.style import TERMINAL
-from designer.report.words import NO_VALUE, demand_text, feature_sentence, first_ticks, number, pseudo_code
+from designer.report.words import (
+    NO_VALUE,
+    by_text,
+    demand_text,
+    feature_sentence,
+    first_ticks,
+    number,
+    pseudo_code,
+)
 
 MOST_RATES = 40
 """How many rates check prints before it keeps to the telling ones."""
@@ -108,13 +118,14 @@ def rates_grid(brief: Brief, verdict: Verdict, jump: int = 0) -> Grid:
 
 def features_grid(brief: Brief, verdict: Verdict) -> Grid | None:
     """Return the table of ledges and gaps, or None where the brief has none."""
-    features: list[Ledge | Gap] = [*brief.ledges, *brief.gaps]
-    found = [*verdict.ledges, *verdict.gaps]
+    features, found = brief.features, verdict.features
     if not features:
         return None
+    head = "feature" if brief.blocks or brief.ceilings else "ledge or gap"
     return Grid(
-        left=(Column("ledge or gap", tuple(one.name for one in features), right=False, widest=24),),
+        left=(Column(head, tuple(one.name for one in features), right=False, widest=24),),
         middle=(
+            *_by_columns(brief, found),
             Column("demand", tuple(demand_text(one) for one in features), right=False, widest=28),
             Column("holds", tuple("yes" if one.holds else "no!" for one in found), right=False),
             Column(
@@ -126,8 +137,41 @@ def features_grid(brief: Brief, verdict: Verdict) -> Grid | None:
     )
 
 
+def _by_columns(brief: Brief, found: Sequence[FeatureVerdict]) -> tuple[Column, ...]:
+    """Return which of several jumps must, and which has the least slack."""
+    if not any(one.worst_jump is not None for one in found):
+        return ()
+    return (
+        Column("by", tuple(by_text(brief, one.by) for one in found), right=False, widest=24),
+        Column("tightest", tuple(one.worst_jump or NO_VALUE for one in found), right=False, widest=16),
+    )
+
+
+def rows_grid(brief: Brief, verdict: Verdict) -> Grid:
+    """Return the table of the rows of a level list that fail, with every column that says where they are."""
+    rows = verdict.failing_rows
+    places = tuple(dict.fromkeys(name for row in rows for name in row.place))
+    return Grid(
+        left=(Column("row", tuple(row.name for row in rows), right=False, widest=24),),
+        middle=(
+            Column("in", tuple(row.source for row in rows), right=False),
+            *(
+                Column(name, tuple(row.place.get(name, "") for row in rows), right=False, widest=20)
+                for name in places
+            ),
+            Column("must", tuple(row.must for row in rows), right=False),
+            *_by_columns(brief, rows),
+            Column(
+                f"spare ({brief.length_unit})", tuple(f"{figure(row.spare, signed=True)}!" for row in rows)
+            ),
+            Column("worst at", tuple(row.worst_rate or NO_VALUE for row in rows), right=False, widest=16),
+        ),
+    )
+
+
 def check_table(brief: Brief, verdict: Verdict) -> RenderableType:
     """Return what check shows: the rates, the score, ledges and gaps with their bands, flags."""
+    brief = binding(brief)
     parts: list[RenderableType] = []
     for index, jump in enumerate(verdict.jumps):
         if len(verdict.jumps) > 1:
@@ -145,11 +189,25 @@ def check_table(brief: Brief, verdict: Verdict) -> RenderableType:
     if features is not None:
         parts.append(features)
         parts.append(Text("At every whole rate from 20 to 1000 Hz:", style=TERMINAL["head"]))
-        every: list[Ledge | Gap] = [*brief.ledges, *brief.gaps]
-        pairs = zip(every, [*verdict.ledges, *verdict.gaps], strict=True)
+        pairs = zip(brief.features, verdict.features, strict=True)
         parts += [Text(f"  {feature_sentence(feature, found)}") for feature, found in pairs]
+    parts += _level_lines(brief, verdict)
     parts += [Text(f"Mind: {flag}") for flag in verdict.flags]
     return Group(*parts)
+
+
+def _level_lines(brief: Brief, verdict: Verdict) -> list[RenderableType]:
+    """Return what becomes of the rows of a level list."""
+    if not verdict.rows:
+        return []
+    fail = len(verdict.failing_rows)
+    said = (
+        f"Level list: {fail} of {verdict.rows} rows fail"
+        if fail
+        else f"Level list: all {verdict.rows} rows hold"
+    )
+    lines: list[RenderableType] = [Text(f"{said}; those that decide stand among the features above.")]
+    return [*lines, rows_grid(brief, verdict)] if fail else lines
 
 
 def score_text(verdict: Verdict) -> str:
@@ -159,18 +217,38 @@ def score_text(verdict: Verdict) -> str:
     text = f"Miss {figure(verdict.miss, 2)}, rate spread {figure(verdict.rate_spread, 2)}"
     text += f", cost {figure(verdict.cost, 2)}."
     if verdict.worst is not None:
-        text += f" Worst: {verdict.worst.measure}, {figure(verdict.worst.value, 2)} tolerances"
+        whose = f"{verdict.worst.jump}, " if verdict.several else ""
+        text += f" Worst: {whose}{verdict.worst.measure}, {figure(verdict.worst.value, 2)} tolerances"
         text += "." if verdict.on_target else " (not on target)." if verdict.worst.value > 1.0 else "."
     if verdict.violation > 0.0:
         text += f" Violation {figure(verdict.violation, 2)}."
     return text
 
 
-def rule_lines(brief: Brief, constants: Constants) -> RenderableType:
-    """Return the rule read back as pseudo-code, and the first ticks."""
+def rule_lines(brief: Brief, verdict: Verdict) -> RenderableType:
+    """Return the rule read back as pseudo-code, and the first ticks.
+
+    Of several jumps the first stands whole, the others with the lines in which they differ.
+    """
+    views = views_of(brief)
     parts: list[RenderableType] = [Text("The rule, read back", style=TERMINAL["head"])]
-    parts += [Text(f"    {line}") for line in pseudo_code(brief, brief.rule, constants)]
-    ticks = first_ticks(brief, constants)
+    codes = [pseudo_code(view, brief.rule, one) for view, one in zip(views, verdict.sets, strict=True)]
+    if len(codes) > 1:
+        parts.append(Text(f"  {brief.jumps[0].name}:"))
+    parts += [Text(f"    {line}") for line in codes[0]]
+    for jump, code in zip(brief.jumps[1:], codes[1:], strict=True):
+        other = [line for line in code if line not in codes[0]]
+        parts.append(Text(f"  {jump.name}: {'the same, but' if other else 'the same'}"))
+        parts += [Text(f"    {line}") for line in other]
+    for index, (view, constants) in enumerate(zip(views, verdict.sets, strict=True)):
+        if codes.index(codes[index]) == index:
+            parts += _first_steps(view, constants, named=len(views) > 1)
+    return Group(*parts)
+
+
+def _first_steps(view: Brief, constants: Constants, *, named: bool) -> list[RenderableType]:
+    """Return the first ticks of one jump as a table."""
+    ticks = first_ticks(view, constants)
     cells = [
         tuple(str(tick.tick) for tick in ticks),
         *(
@@ -179,9 +257,10 @@ def rule_lines(brief: Brief, constants: Constants) -> RenderableType:
         ),
     ]
     heads = ("step", "v before", "u (not rounded)", "v after", "y after")
-    parts += [
+    head = f"First steps at {view.nominal(constants).name}"
+    head = f"{view.jumps[0].name}: f{head[1:]}" if named else head
+    return [
         Text(""),
-        Text(f"First steps at {brief.nominal(constants).name}", style=TERMINAL["head"]),
+        Text(head, style=TERMINAL["head"]),
         Grid((), tuple(Column(head, column) for head, column in zip(heads, cells, strict=True))),
     ]
-    return Group(*parts)

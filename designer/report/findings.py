@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from designer.analysis.breaks import Break
-from designer.brief.model import Brief, Gap, Ledge
+from designer.brief.model import Block, Brief, Ceiling, Feature, Gap, Ledge
 from designer.objective.bands import band_names
 from designer.objective.verdict import FeatureVerdict, Verdict
 from designer.report.shown import NEAREST, TODAY, View
@@ -24,6 +24,9 @@ OUTRIGHT = {
     ("ledge", "reach"): "is out of reach",
     ("gap", "cross"): "is too wide",
     ("gap", "stay-out"): "can be crossed",
+    ("block", "clear"): "is not cleared",
+    ("block", "stay-out"): "can be cleared",
+    ("ceiling", "stay-under"): "is hit",
 }
 SHORT_OF_MARGIN = "is short of its margin"
 STUCK = "the jump never lands"
@@ -64,7 +67,10 @@ def failing_clause(
 
 def judged(verdict: Verdict, kind: str, index: int) -> FeatureVerdict:
     """Return the verdict on one feature."""
-    return verdict.ledges[index] if kind == "ledge" else verdict.gaps[index]
+    every = {
+        "ledge": verdict.ledges, "gap": verdict.gaps, "block": verdict.blocks, "ceiling": verdict.ceilings
+    }  # fmt: skip
+    return every[kind][index]
 
 
 def bands_of(view: View, mask: NDArray[np.bool_]) -> tuple[str, ...]:
@@ -312,9 +318,18 @@ def arc_title(view: View, unit: str = "") -> str:
     return f"{held}; between them {found.text.replace(f' {BETWEEN},', '')}"
 
 
-def features(brief: Brief) -> Iterator[tuple[str, int, Ledge | Gap]]:
-    """Yield "ledge" or "gap", the index in its list, and the feature."""
-    for index, ledge in enumerate(brief.ledges):
-        yield "ledge", index, ledge
-    for index, gap in enumerate(brief.gaps):
-        yield "gap", index, gap
+def kind_of(feature: Feature) -> str:
+    """Return "ledge", "gap", "block" or "ceiling"."""
+    if isinstance(feature, Gap):
+        return "gap"
+    if isinstance(feature, Block):
+        return "block"
+    return "ceiling" if isinstance(feature, Ceiling) else "ledge"
+
+
+def features(brief: Brief) -> Iterator[tuple[str, int, Feature]]:
+    """Yield "ledge", "gap", "block" or "ceiling", the index in its list, and the feature."""
+    lists: tuple[Sequence[Feature], ...] = (brief.ledges, brief.gaps, brief.blocks, brief.ceilings)
+    for every in lists:
+        for index, feature in enumerate(every):
+            yield kind_of(feature), index, feature

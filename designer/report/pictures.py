@@ -18,7 +18,8 @@ from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
 
-from designer.brief.model import Brief, Gap, Ledge
+from designer.brief.model import Brief
+from designer.objective.rows import binding
 from designer.report import (
     build_arcs,
     build_front,
@@ -95,9 +96,14 @@ def make_pictures(
 
 def plan(brief: Brief, result: SearchResult) -> list[Callable[[], Picture]]:
     """Return how to draw each picture, in order; call them within rc_context(style.RC)."""
+    brief = binding(brief)
     best = best_of(result)
     if best is None:
         return []
+    if brief.several:
+        from designer.report.several_pictures import plan_several
+
+        return plan_several(brief, result, best)
     rows = views(brief, result)
     both = pair(rows, best)
     todo: list[Callable[[], Picture]] = [lambda: reach_picture(brief, both)]
@@ -115,7 +121,8 @@ def plan(brief: Brief, result: SearchResult) -> list[Callable[[], Picture]]:
     return todo
 
 
-def _figure(size: tuple[float, float]) -> Figure:
+def blank(size: tuple[float, float]) -> Figure:
+    """Return an empty figure of a size in inches."""
     figure = Figure(figsize=size)
     FigureCanvasAgg(figure)
     return figure
@@ -123,7 +130,7 @@ def _figure(size: tuple[float, float]) -> Figure:
 
 def front_picture(data: score_figures.FrontPicture) -> Picture:
     """Draw miss against rate spread."""
-    figure = _figure(style.SIZE_WIDE)
+    figure = blank(style.SIZE_WIDE)
     score_figures.front(figure.add_axes((0.08, 0.12, 0.88, 0.72)), data)
     return Picture("front", figure, build_front.front_alt(data))
 
@@ -131,8 +138,8 @@ def front_picture(data: score_figures.FrontPicture) -> Picture:
 def reach_picture(brief: Brief, rows: Sequence[View]) -> Picture:
     """Draw reach against frame rate: today and the best over the ledges. The picture that sells."""
     data = build_reach.reach(brief, rows)
-    height = max(0.72 * style.SIZE_WIDE[1], _column_height(len(data.demands) + len(data.threads)))
-    figure = _figure((style.SIZE_WIDE[0], height / 0.72))
+    height = max(0.72 * style.SIZE_WIDE[1], column_height(len(data.demands) + len(data.threads)))
+    figure = blank((style.SIZE_WIDE[0], height / 0.72))
     figures.reach_by_rate(figure.add_axes((0.08, 0.12, 0.72, 0.72)), data)
     return Picture("reach-by-rate", figure, build_reach.reach_alt(data))
 
@@ -140,8 +147,8 @@ def reach_picture(brief: Brief, rows: Sequence[View]) -> Picture:
 def reach_panels(brief: Brief, rows: Sequence[View]) -> Picture:
     """Draw the same for every set, a panel each on one scale, so that none hides another."""
     panels = build_reach.reach_panels(brief, rows)
-    axes, figure = _grid(
-        len(panels), 5.0, 2.7, gap=(_label_room(brief), _between(panels, len(brief.ledges), 2.7))
+    axes, figure = grid(
+        len(panels), 5.0, 2.7, gap=(label_room(brief), between(panels, len(brief.ledges), 2.7))
     )
     for ax, data in zip(axes, panels, strict=True):
         figures.reach_by_rate(ax, data)
@@ -156,7 +163,7 @@ def gap_picture(brief: Brief, rows: Sequence[View]) -> Picture:
     heads = [figures.heading_height(one.title, one.subtitle) for one in panels]
     feet = [LINE * (figures.foot_text(one.remarks).count("\n") + 2) if one.remarks else 0.0 for one in panels]
     total = sum(heads) + sum(feet) + len(panels) * (PANEL + AXIS)
-    figure = _figure((style.SIZE_WIDE[0], total))
+    figure = blank((style.SIZE_WIDE[0], total))
     top = total
     for data, head, below in zip(panels, heads, feet, strict=True):
         bottom = top - head - PANEL
@@ -174,8 +181,8 @@ def arc_picture(brief: Brief, rows: Sequence[View]) -> Picture:
     by_distance = panels[0].scene.by_distance
     height = min(max(width * tall / wide, 1.6), 5.2) if by_distance else 0.5 * width
     width = min(width, height * wide / tall) if by_distance else width
-    room = _between(panels, len(brief.features), height)
-    axes, figure = _grid(len(panels), width, height, gap=(_label_room(brief), room))
+    room = between(panels, len(brief.features), height)
+    axes, figure = grid(len(panels), width, height, gap=(label_room(brief), room))
     for ax, data in zip(axes, panels, strict=True):
         arcs(ax, data)
     return Picture("arcs", figure, build_arcs.arc_alt(brief, panels))
@@ -184,19 +191,19 @@ def arc_picture(brief: Brief, rows: Sequence[View]) -> Picture:
 def sensitivity_picture(data: build_sensitivity.SensitivityPicture) -> Picture:
     """Draw what one increment of each constant does to the best."""
     count, rows = len(data.columns), len(data.labels)
-    axes, figure = _grid(count, 2.15, 0.55 + 0.3 * rows, gap=(0.35, 0.0), columns=count)
+    axes, figure = grid(count, 2.15, 0.55 + 0.3 * rows, gap=(0.35, 0.0), columns=count)
     for index, (ax, (name, bars)) in enumerate(zip(axes, data.columns, strict=True)):
         score_figures.sensitivity(ax, name, bars, data.limit, row_labels=index == 0)
     score_figures.banner(axes[0], data.title, data.subtitle)
     return Picture("sensitivity", figure, data.alt)
 
 
-def _column_height(names: int) -> float:
+def column_height(names: int) -> float:
     """Return the inches that a column of so many labels of two lines takes."""
     return names * labels.height_of(2) / labels.POINTS_PER_INCH
 
 
-def _between(
+def between(
     panels: Sequence[figures.ReachPicture] | Sequence[ArcPicture], names: int, height: float
 ) -> float:
     """Return the inches from the foot of one panel's axes to the head of the next one's."""
@@ -206,24 +213,23 @@ def _between(
 
 def _overhang(names: int, height: float) -> float:
     """Return by how many inches a column of names is taller than its panel."""
-    return max(0.0, _column_height(names) - height)
+    return max(0.0, column_height(names) - height)
 
 
-def _label_room(brief: Brief) -> float:
-    """Return the inches between two panels: the names of ledges and gaps, and the next panel's axis."""
-    features: list[Ledge | Gap] = [*brief.ledges, *brief.gaps]
-    names = [len(style.shorten(feature.name)) for feature in features]
+def label_room(brief: Brief) -> float:
+    """Return the inches between two panels: the names of features, and the next panel's axis."""
+    names = [len(style.shorten(feature.name)) for feature in brief.features]
     return 1.1 + 0.078 * max([18, *names])
 
 
-def _grid(
+def grid(
     count: int, width: float, height: float, gap: tuple[float, float], columns: int | None = None
 ) -> tuple[list[Axes], Figure]:
     """Return `count` axes of one size (inches) in rows of two, or of `columns`, and their figure."""
     across = columns or min(count, 2)
     down = -(-count // across)
     size = (across * (width + gap[0]), down * (height + gap[1]))
-    figure = _figure(size)
+    figure = blank(size)
     axes = []
     for index in range(count):
         row, column = divmod(index, across)

@@ -6,14 +6,15 @@ import csv
 import io
 import shutil
 import tempfile
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Mapping
 from contextlib import contextmanager
 from pathlib import Path
 
 from designer.brief.model import Brief
 from designer.errors import Fault, InputError
 from designer.motion.measures import MEASURES
-from designer.motion.rule import CONSTANT_NAMES
+from designer.motion.rule import CONSTANT_NAMES, SHARED
+from designer.objective.verdict import Verdict
 from designer.report.document import DIGITS, search_document, to_json
 from designer.search.progress import Progress
 from designer.search.result import Candidate, SearchResult
@@ -49,7 +50,7 @@ def _csv_number(value: object) -> str:
 def _csv_row(name: str, candidate: Candidate) -> dict[str, object]:
     verdict = candidate.verdict
     row: dict[str, object] = {"label": name, "mark": verdict.mark, "change": candidate.change}
-    row |= {constant: getattr(verdict.constants, constant) for constant in CONSTANT_NAMES}
+    row |= _csv_constants(verdict)
     row |= {
         "miss": verdict.miss,
         "rate_spread": verdict.rate_spread,
@@ -60,10 +61,26 @@ def _csv_row(name: str, candidate: Candidate) -> dict[str, object]:
     for jump in verdict.jumps:
         row |= {f"{jump.name}.nominal.{measure}": jump.nominal.measures[measure] for measure in MEASURES}
         row |= {f"{jump.name}.spread.{measure}": value for measure, value in jump.spreads.items()}
-    for feature in (*verdict.ledges, *verdict.gaps):
-        row[f"{feature.name}.spare"] = feature.spare
-        row[f"{feature.name}.worst_rate"] = feature.worst_rate
+        row |= {f"{jump.name}.cost": jump.cost} if verdict.several else {}
+    for feature in verdict.features:
+        name = feature.name
+        if feature.source and f"{name}.spare" in row:  # rows of a level list need not differ in their names
+            name = f"{name}, {feature.source}"
+        row[f"{name}.spare"] = feature.spare
+        row[f"{name}.worst_rate"] = feature.worst_rate
     row["why"] = candidate.why
+    return row
+
+
+def _csv_constants(verdict: Verdict) -> dict[str, object]:
+    """Return a set's constants by column; of several jumps what is everybody's, then each one's own."""
+    if not verdict.several:
+        names = (name for name in CONSTANT_NAMES if name != "gravity_factor")
+        return {name: getattr(verdict.constants, name) for name in names}
+    row: dict[str, object] = {name: getattr(verdict.constants, name) for name in SHARED}
+    for jump in verdict.jumps:
+        own = (name for name in CONSTANT_NAMES if name not in SHARED)
+        row |= {f"{jump.name}.{name}": getattr(jump.constants, name) for name in own}
     return row
 
 
@@ -132,7 +149,7 @@ def new_folder(root: Path, name: str) -> Iterator[tuple[Path, Path]]:
 
 def write_results(
     brief: Brief,
-    source: bytes,
+    source: bytes | Mapping[str, bytes],
     result: SearchResult,
     root: Path,
     *,
@@ -141,16 +158,31 @@ def write_results(
 ) -> Path:
     """Write root/NAME/ with candidates.json, candidates.csv, the brief and figures/; return the folder.
 
-    A second run gets NAME-2. source is the brief's own text, kept so that `check` can read the results;
-    progress hears how far the pictures are.
+    A second run gets NAME-2. source is the brief's own text, or all its files by name (see
+    `designer.brief.reading.sources_of`), kept so that `check` can read the results; progress hears how far
+    the pictures are.
     """
     with new_folder(root, brief.name) as (folder, final):
         (folder / CANDIDATES).write_bytes(to_json(search_document(result)).encode())
         (folder / TABLE).write_bytes(candidates_csv(named(result)).encode())
-        (folder / BRIEF).write_bytes(source)
+        for name, data in ({BRIEF: source} if isinstance(source, bytes) else source).items():
+            (folder / name).write_bytes(data)
         if pictures:
             from designer.report.pictures import make_pictures
 
             (folder / FIGURES).mkdir()
             make_pictures(brief, result, folder / FIGURES, progress)
     return final
+
+
+def find_pick(document: object, pick: str) -> object:
+    """Return the candidate of a read candidates.json that has this label, name or mark; None without one."""
+    if not isinstance(document, dict):
+        return None
+    if pick == "today":
+        return document.get("today")
+    for part in ("shortlist", "sets", "front"):
+        for one in document.get(part, []):
+            if pick in (one["label"], one["mark"], f"{one['label']}·{one['mark']}"):
+                return one
+    return None

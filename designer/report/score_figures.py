@@ -132,8 +132,13 @@ class Bar:
     flip: bool
 
 
-def sensitivity(ax: Axes, name: str, bars: Sequence[Bar], limit: float, row_labels: bool = True) -> Axes:
-    """Draw the change of one measure for one increment of each constant, in tolerances; flips are hatched."""
+def sensitivity(
+    ax: Axes, name: str, bars: Sequence[Bar], limit: float, row_labels: bool = True, *, zeros: bool = True
+) -> Axes:
+    """Draw the change of one measure for one increment of each constant, in tolerances; flips are hatched.
+
+    With zeros=False what does not move the measure at all stays blank.
+    """
     rows = np.arange(len(bars))
     ax.set_xlim(-limit, limit)
     ax.set_ylim(len(bars) - 0.4, -0.6)
@@ -142,6 +147,8 @@ def sensitivity(ax: Axes, name: str, bars: Sequence[Bar], limit: float, row_labe
     for row, bar in zip(rows.tolist(), bars, strict=True):
         if bar.value is None:
             _bar_text(ax, row, 0.0, "never lands", style.BREACH_TEXT)
+            continue
+        if bar.value == 0.0 and not zeros:
             continue
         shown = float(np.clip(bar.value, -limit, limit))
         ax.barh(
@@ -188,16 +195,16 @@ def _bar_text(ax: Axes, row: float, end: float, text: str, colour: str, limit: f
     )
 
 
-def banner(ax: Axes, title: str, subtitle: str) -> None:
-    """Write one heading over a row of panels, above the small title of the first."""
-    for text, up, size, weight, colour in (
+def banner(ax: Axes, title: str, subtitle: str, up: float = 0.0) -> None:
+    """Write one heading over a row of panels, above the small title of the first, `up` points higher."""
+    for text, over, size, weight, colour in (
         (title, 46, style.FONT_TITLE, "bold", style.INK),
         (subtitle, 28, style.FONT_SMALL, "normal", style.QUIET),
     ):
         ax.annotate(
             text,
             (0, 1),
-            (0, up),
+            (0, over + up),
             xycoords="axes fraction",
             textcoords="offset points",
             fontsize=size,

@@ -54,6 +54,8 @@ TITLE_WIDTH = 76
 """Characters after which a title breaks."""
 FOOT_WIDTH = 124
 """Characters after which a remark under a picture breaks."""
+HEAD_WIDTH = 15
+"""Characters that fit over one narrow panel of a row of them."""
 TITLE_WIDTH_SMALL = 52
 """The same over one panel among several."""
 

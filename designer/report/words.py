@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
-from designer.brief.model import Brief, Gap, Ledge
-from designer.motion.rule import Constants, FrameTime, Integrator, LandingTest, Mode, Place, Rule
+from designer.brief.model import Block, Brief, Ceiling, Feature, Gap
+from designer.motion.rule import Constants, FrameTime, How, Integrator, LandingTest, Mode, Place, Rule, Second
 from designer.motion.simulate import trace
+from designer.objective.table import as_flown
 from designer.objective.verdict import FeatureVerdict
-from designer.report.findings import failing_clause
+from designer.report.findings import failing_clause, kind_of
 
 ROUND = {
     Mode.NEAREST_EVEN: "round_half_even({x})",
@@ -20,6 +22,9 @@ ROUND = {
     Mode.UP: "ceiling({x})",
 }
 """How each mode reads; x is counted in grains."""
+
+OWN_GRAVITY = "own_gravity"
+"""What pseudo-code calls the gravity of a jump that has a factor on the game's one."""
 
 NO_VALUE = "–"
 """What stands where there is no number."""
@@ -67,7 +72,7 @@ def _step_line(brief: Brief, rule: Rule, constants: Constants) -> str:
 
 def _velocity_lines(rule: Rule, constants: Constants) -> list[str]:
     """Say how v becomes u."""
-    gravity = _plain(constants.gravity)
+    gravity = _plain(constants.gravity) if constants.gravity_factor == 1.0 else OWN_GRAVITY
     lines = []
     if constants.fall_factor != 1.0:
         lines.append(f"g = {gravity} if v > 0 else {gravity} * {_plain(constants.fall_factor)}")
@@ -102,12 +107,31 @@ def _landing_lines(rule: Rule) -> list[str]:
     return lines
 
 
+def _second_lines(second: Second | None, constants: Constants) -> tuple[str, list[str]]:
+    """Say when a second jump acts, and what it does to v: how it starts, and its lines in each step."""
+    if second is None:
+        return "", []
+    speed = _plain(second.launch_speed)
+    made = f"v = {speed}" if second.how is How.SET else f"v = v + {speed}"
+    if second.when is None:
+        when = "second_jump and v <= 0 and not first_step"
+        return "; second_jump = true", [f"if {when}: {made}; second_jump = false"]
+    when = f"second_jump and n * h >= {_plain(second.when)}"
+    note = "   # n: whole steps since the launch"
+    return "; second_jump = true", [f"if {when}: {made}; second_jump = false{note}"]
+
+
 def pseudo_code(brief: Brief, rule: Rule, constants: Constants) -> list[str]:
-    """Return the update rule as a few lines of pseudo-code with these constants, only the parts in use."""
+    """Return the update rule as a few lines of pseudo-code with these constants, only the parts in use.
+
+    The brief has one jump, or is the view of one.
+    """
+    second, again = _second_lines(brief.jumps[0].second, constants)
     rounded = constants.grain > 0.0
     carry = rounded and rule.rounding.carry
     start = f"y = 0; v = {_plain(constants.launch_speed)}" + ("; e = 0" if carry else "")
-    body = _velocity_lines(rule, constants)
+    start += second
+    body = again + _velocity_lines(rule, constants)
     if carry:
         body += ["t = u + e", f"w = {_snap('t', constants.grain, rule.rounding.mode)}", "e = t - w"]
     elif rounded:
@@ -117,9 +141,11 @@ def pseudo_code(brief: Brief, rule: Rule, constants: Constants) -> list[str]:
     if rule.position.grain > 0.0:
         body.append(f"y = {_snap('y', rule.position.grain, rule.position.mode)}")
     body.append("v = w" if rounded else "v = u")
-    return [_step_line(brief, rule, constants), start, "each step:"] + [
-        f"    {line}" for line in [*body, *_landing_lines(rule)]
-    ]
+    head = [_step_line(brief, rule, constants)]
+    if constants.gravity_factor != 1.0:
+        gravity, factor = _plain(constants.gravity), _plain(constants.gravity_factor)
+        head.append(f"{OWN_GRAVITY} = {gravity} * {factor}   # formed once")
+    return [*head, start, "each step:"] + [f"    {line}" for line in [*body, *_landing_lines(rule)]]
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,25 +163,49 @@ class Tick:
 
 
 def first_ticks(brief: Brief, constants: Constants, n: int = 4) -> list[Tick]:
-    """Return the first n steps at the nominal rate; fewer where the jump is over sooner."""
-    flight = trace(brief.rule, constants, brief.nominal(constants).step, max_steps=n)
+    """Return the first n steps at the nominal rate; fewer where the jump is over sooner.
+
+    With a second jump in the air also the two steps in which it acts.
+    """
+    second = brief.jumps[0].second
+    step = brief.nominal(constants).step
+    constants = as_flown(constants)
+    if second is None:
+        flight = trace(brief.rule, constants, step, max_steps=n)
+    else:
+        flight = trace(brief.rule, constants, step, second=second)
+    rows = list(range(1, min(n, len(flight.y) - 1) + 1))
+    if flight.second_step is not None:
+        rows += [i for i in (flight.second_step, flight.second_step + 1) if n < i < len(flight.y)]
     return [
         Tick(i, float(flight.v[i - 1]), float(flight.unrounded[i]), float(flight.v[i]), float(flight.y[i]))
-        for i in range(1, min(n, len(flight.y) - 1) + 1)
+        for i in rows
     ]
 
 
-def feature_sentence(feature: Ledge | Gap, found: FeatureVerdict) -> str:
+def feature_sentence(feature: Feature, found: FeatureVerdict) -> str:
     """Return a sentence on where a demand fails: "billboard opens at 201–250 and 334–360 Hz"."""
-    kind = "ledge" if isinstance(feature, Ledge) else "gap"
+    kind = kind_of(feature)
     return failing_clause(kind, feature.must, feature.name, found.failing, most=len(found.failing))
 
 
-def demand_text(feature: Ledge | Gap, unit: str = "") -> str:
+def by_text(brief: Brief, by: Sequence[str]) -> str:
+    """Return the jumps that a feature binds: "walk, sprint", "every jump"."""
+    return "every jump" if len(by) == len(brief.jumps) > 1 else ", ".join(by)
+
+
+DEMANDS = {"stay-out": "stay out of", "stay-under": "stay under"}
+"""How demands read where they are more than the word itself."""
+
+
+def demand_text(feature: Feature, unit: str = "") -> str:
     """Return a demand for a table: "reach 110, margin 2"; "cross 380 to −40, margin 5"."""
-    word = {"reach": "reach", "cross": "cross", "stay-out": "stay out of"}[feature.must]
-    size = feature.height if isinstance(feature, Ledge) else feature.width
-    text = f"{word} {number(size)}{' ' + unit if unit else ''}"
+    size = feature.width if isinstance(feature, Gap) else feature.height
+    text = f"{DEMANDS.get(feature.must, feature.must)} {number(size)}{' ' + unit if unit else ''}"
+    if isinstance(feature, Block):
+        text += f" high, {number(feature.length)} long"
+    if isinstance(feature, Ceiling) and feature.body_height:
+        text += f" with {number(feature.body_height)} above"
     if isinstance(feature, Gap) and feature.far_level:
         text += f" to {number(feature.far_level)}"
     return text + (f", margin {number(feature.margin)}" if feature.margin else "")
