@@ -305,14 +305,24 @@ def panel_title(view: View, unit: str = "") -> str:
 def arc_title(view: View, unit: str = "") -> str:
     """Return what the arcs of one set show: every demand at the rates drawn, and what breaks between them."""
     name = shorten(view.name)
-    if not view.breaks:
+    verdict = view.verdict
+    # Blocks and ceilings are not swept over the rates: what the verdict says of them is all there is.
+    unswept = [("block", one) for one in verdict.blocks] + [("ceiling", one) for one in verdict.ceilings]
+    broken = [(kind, one) for kind, one in unswept if not one.holds and one.worst_rate is not None]
+    if broken:
+        kind, one = broken[0]
+        rest = (
+            f", and {len(broken) - 1} more fail{'s' if len(broken) == 2 else ''}" if len(broken) > 1 else ""
+        )
+        return f"{name}: {failing_clause(kind, one.must, one.name, [str(one.worst_rate)])}{rest}"
+    if not view.breaks and not unswept:
         apex = view.verdict.jumps[0].nominal.measures.get("apex")
         return f"{name}: {STUCK}" if apex is None else f"{name}: apex {length(apex, unit, 4)}"
     found = state(view, "", most=2)
     if found.fails and any(part.counts for part in parts(view)):
         return f"{name}: {found.text}"
-    one = "at its own rate" if not view.supported else "at the supported rates"
-    held = f"{name}: every demand holds {one}"
+    where = "at its own rate" if not view.supported else "at the supported rates"
+    held = f"{name}: every demand holds {where}"
     if not found.fails:
         return held
     return f"{held}; between them {found.text.replace(f' {BETWEEN},', '')}"

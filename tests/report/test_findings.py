@@ -8,7 +8,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from designer.brief.model import Brief, Ledge, Rate
+from designer.brief.model import Block, Brief, Ceiling, Ledge, Rate
 from designer.motion.rule import Constants
 from designer.objective.judge import judge
 from designer.report import findings, style
@@ -223,3 +223,21 @@ def test_long_names_are_cut_in_titles() -> None:
     title = findings.compare(measured(brief, PROPOSED[:1], today=None), "ledge").text
     assert "…”" in title
     assert len(title) < style.LABEL_WIDTH + 40
+
+
+def test_blocks_and_ceilings_are_not_passed_over() -> None:
+    """An arcs title never says that every demand holds where a block is not cleared or a ceiling is hit."""
+    wall = Block("wall", 60.0, 900.0, "clear")
+    beam = Ceiling("beam", 250.0, 180.0, "stay-under")
+    for blocks, ceilings, told in (
+        ((wall,), (), "“wall” is not cleared or is short of its margin at "),
+        ((), (beam,), "“beam” is hit or is short of its margin at "),
+        ((wall,), (beam,), ", and 1 more fails"),
+    ):
+        rows = measured(courier(ledges=(), gaps=(), blocks=blocks, ceilings=ceilings), [PROPOSED[0]])
+        title = findings.arc_title(rows[-1])
+        assert not rows[-1].verdict.feasible
+        assert told in title
+        assert "holds" not in title
+    low = courier(ledges=(), gaps=(), blocks=(Block("kerb", 5.0, 20.0, "clear"),))
+    assert findings.arc_title(measured(low, [PROPOSED[0]])[-1]).startswith("A: every demand holds")
