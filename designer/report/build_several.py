@@ -87,8 +87,12 @@ def gaps_of_each(brief: Brief, result: SearchResult, best: Candidate) -> tuple[l
     """Return a picture for each jump, far level and kind of demand; none without gaps."""
     pictures, words = [], []
     for view, rows in each_jump(brief, result, best):
-        for picture in build_reach.gap_reaches(view, rows) if view.gaps else ():
-            title = f"{style.shorten(view.jumps[0].name)}: {_small(picture.title)}"
+        # A panel for each far level and kind of demand, in the order of `gap_reaches`.
+        kinds = dict.fromkeys((gap.far_level, gap.must) for gap in view.gaps)
+        panels = build_reach.gap_reaches(view, rows) if kinds else []
+        for (level, _), picture in zip(kinds, panels, strict=True):
+            side = f", far side at {level:g}" if level else ""
+            title = f"{style.shorten(view.jumps[0].name)}{side}: {_small(picture.title)}"
             words.append(build_reach.reach_alt(replace(picture, title=title)))
             pictures.append(replace(picture, title=title, subtitle="", remarks=(), small=True))
     return pictures, words
