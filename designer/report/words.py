@@ -184,9 +184,9 @@ def first_ticks(brief: Brief, constants: Constants, n: int = 4) -> list[Tick]:
 
 
 def feature_sentence(feature: Feature, found: FeatureVerdict) -> str:
-    """Return a sentence on where a demand fails: "billboard opens at 201–250 and 334–360 Hz"."""
-    kind = kind_of(feature)
-    return failing_clause(kind, feature.must, feature.name, found.failing, most=len(found.failing))
+    """Return where a demand fails: "“billboard” opens or is short of its margin at 201–250 Hz"."""
+    kind, bands = kind_of(feature), found.failing
+    return failing_clause(kind, feature.must, feature.name, bands, most=len(bands), margin=feature.margin)
 
 
 def by_text(brief: Brief, by: Sequence[str]) -> str:
