@@ -22,7 +22,7 @@ class Fault:
 
     def __str__(self) -> str:
         what = " = ".join(part for part in (self.field, self.value) if part)
-        if self.field and not self.value:
+        if self.field and not self.value and self.fix.startswith("add "):
             what = f"{self.field} is missing"
         head = f"{self.place}: {what}" if what else self.place
         return f"{head}\n    allowed: {self.allowed}\n    fix: {self.fix}"

@@ -49,13 +49,13 @@ def read_text(path: Path, kind: Kind, at: tuple[str, str, str] | None = None) ->
             data = file.read(kind.largest + 1)
     except FileNotFoundError:
         fix = f"check the name and the folder{start}"
-        raise InputError(Fault(*at, f"{kind.word}'s file; there is none of this name", fix)) from None
+        raise InputError(Fault(*at, f"{kind.word}; there is none of this name", fix)) from None
     except IsADirectoryError:
         fix = f"name the {kind.ending} file in it"
-        raise InputError(Fault(*at, f"{kind.word}'s file; this is a folder", fix)) from None
+        raise InputError(Fault(*at, f"{kind.word}; this is a folder", fix)) from None
     except (OSError, ValueError) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
-        words = f"{kind.word}'s file that can be read; the system says: {reason}"
+        words = f"{kind.word} that can be read; the system says: {reason}"
         raise InputError(Fault(*at, words, "check the file's permissions and its name")) from None
     if len(data) > kind.largest:
         words = f"{kind.word} of at most {kind.size}; this file is larger, so it is something else"

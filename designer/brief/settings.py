@@ -161,7 +161,9 @@ def _follows(
         return None
     ratio = own / led
     points = brief.variables[more[0]].choice.values if len(more) == 1 else None
-    return ratio if points is None else min(points, key=lambda point: abs(point - ratio))
+    nearest = ratio if points is None else min(points, key=lambda point: abs(point - ratio))
+    # The factor as written, without the noise of the division; one that the search may not use is kept.
+    return nearest if abs(nearest - ratio) <= 1e-9 * abs(ratio) else ratio
 
 
 def _ancestors(brief: Brief, jump: JumpBrief) -> list[str]:

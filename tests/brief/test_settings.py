@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import pytest
 
+from designer.brief.reading import parse_brief
 from designer.brief.settings import set_with_settings, with_settings
 from designer.errors import InputError
 from tests.reference.make import small_brief
@@ -88,3 +89,36 @@ def test_a_brief_without_jumps_knows_neither_names_nor_factors() -> None:
         with pytest.raises(InputError) as caught:
             with_settings(brief, brief.today, [setting])
         assert "gravity_factor" not in caught.value.faults[0].allowed
+
+
+def test_setting_what_is_there_already_changes_nothing() -> None:
+    """Today's factor of a linked jump may be one that the search does not try: it is kept all the same."""
+    brief = parse_brief(CREW, "crew.toml")
+    today = [jump.today for jump in brief.jumps]
+    assert set_with_settings(brief, today, ["walk.launch_speed=540"]) == tuple(today)
+
+
+CREW = """
+[units]
+length = "cm"
+[loop]
+steps = "each-frame"
+aim_at = "60 Hz"
+[rule]
+integrator = "semi-implicit"
+[today]
+gravity = 1500
+[search]
+gravity = { from = 1200, to = 2000, every = 20 }
+[jumps.walk]
+today = { launch_speed = 540 }
+search = { launch_speed = { from = 480, to = 640, every = 10 } }
+targets = { apex = { aim = 100, within = 2 } }
+[jumps.laden]
+like = "walk"
+today = { launch_speed = 540 }
+search.launch_speed = { of = "walk", times = { from = 0.7, to = 0.95, every = 0.05 } }
+targets = { apex = { aim = 60, within = 2 } }
+[rates]
+supported = ["60 Hz"]
+"""
