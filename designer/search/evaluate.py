@@ -12,7 +12,6 @@ import numpy as np
 from designer.brief.model import Brief
 from designer.motion.closed_form import has_closed_form
 from designer.motion.jumps import LONGEST_FLIGHT
-from designer.motion.rule import SEARCHABLE
 from designer.objective.modules import ObjectiveModule
 from designer.objective.score import Scores, score
 from designer.objective.table import Designs, design_tables
@@ -48,11 +47,6 @@ def figures(value: float) -> int:
 def designs_of(matrix: Floats) -> Designs:
     """Return the designs whose constants are the columns of a matrix (designs, 7), in SEARCHABLE's order."""
     return Designs(*np.ascontiguousarray(np.asarray(matrix, dtype=np.float64).T))
-
-
-def matrix_of(designs: Designs) -> Floats:
-    """Return the constants of designs as a matrix (designs, 7), in SEARCHABLE's order."""
-    return np.column_stack([getattr(designs, name) for name in SEARCHABLE])
 
 
 @dataclass
